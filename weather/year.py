@@ -8,9 +8,10 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["Floats", "Site", "Stamp", "WeatherYear"]
+__all__ = ["Floats", "Mask", "Site", "Stamp", "WeatherYear"]
 
 Floats = NDArray[np.float64]
+Mask = NDArray[np.bool_]
 
 
 @dataclass(frozen=True, kw_only=True)

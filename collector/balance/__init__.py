@@ -1,0 +1,1 @@
+"""Absorbed sunlight, losses and the steady heat balance: all hours at once."""

@@ -1,0 +1,1 @@
+"""Published relations: numbers in, numbers out. Nothing here has seen a scenario or a file."""
