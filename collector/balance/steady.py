@@ -16,7 +16,7 @@ from collector.physics.fin import capacity_ratio_factor, efficiency_factor, fin_
 from collector.physics.fluids import liquid, valid_range
 from weather.year import Floats, Mask
 
-__all__ = ["Feed", "Stream", "SteadyState", "solve_running", "solve_stagnation", "stream_of"]
+__all__ = ["Feed", "SteadyState", "Stream", "Uptake", "operate", "solve_running", "solve_stagnation", "stream_of"]
 
 TOLERANCE = 1e-8  # W/m2, of every node's balance
 MOST_ITERATIONS = 60
@@ -225,6 +225,43 @@ def solve_running(network: Network, around: Surroundings, absorbed: Absorbed, *,
     """
     t_plate = uptake.feed.temperature + absorbed.plate / 100.0
     return _solve(network, around, absorbed, nodes=_first_guess(network, around, t_plate=t_plate), uptake=uptake)
+
+
+def operate(
+    network: Network, around: Surroundings, absorbed: Absorbed, *, uptake: Uptake, still: SteadyState
+) -> tuple[SteadyState, Mask]:
+    """Hours as a pump would have them: running where there is heat to gain, standing still otherwise.
+
+    Parameters
+    ----------
+    network, around, absorbed, uptake
+        As for ``solve_running``.
+    still
+        The same hours at stagnation. A plate that stagnates above the fed temperature has heat to give, and only then.
+
+    Returns
+    -------
+    SteadyState
+        All n hours.
+    ndarray of bool
+        Which of them run, ``(n,)``.
+    """
+    on = still.t_plate > uptake.feed.temperature
+    running = solve_running(network, around.at(on), absorbed.at(on), uptake=uptake)
+    return _merge(still, running, on), on
+
+
+def _merge(whole: SteadyState, part: SteadyState, hours: Mask) -> SteadyState:
+    def put(into: Floats, values: Floats) -> Floats:
+        merged = into.copy()
+        merged[..., hours] = values
+        return merged
+
+    fields = {
+        name: Losses(*map(put, value, getattr(part, name))) if isinstance(value, Losses) else put(value, getattr(part, name))
+        for name, value in vars(whole).items()
+    }
+    return SteadyState(**fields)
 
 
 def _first_guess(network: Network, around: Surroundings, *, t_plate: Floats) -> Floats:

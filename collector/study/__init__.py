@@ -1,0 +1,1 @@
+"""Questions put to a collector, one file each. Results only: nothing here prints."""

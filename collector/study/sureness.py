@@ -1,0 +1,80 @@
+"""How sure a year's heat is: the same year with each other published relation, one at a time."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Any, NamedTuple
+
+from collector.build.scenario import CHOICES, Scenario
+from collector.study.year import HeatYear, heat_years
+from weather.sky import available_models
+from weather.sun import sun_position
+from weather.year import WeatherYear
+
+__all__ = ["Alternative", "alternatives"]
+
+BUILDING_LENGTH = 8.0  # m, cube root of a house of about 500 m3, where the scenario names no building
+
+
+class Alternative(NamedTuple):
+    """One thing changed: which, to what, the year's heat then [kWh/m2], and whether it is a bound and no relation."""
+
+    changed: str
+    to: str
+    useful: float
+    bound: bool
+
+
+def alternatives(scenario: Scenario, *, weather: WeatherYear) -> list[list[Alternative]]:
+    """Repeat a year with each other relation for wind, sky, tilted sky and diffuse optics, and with half the wind.
+
+    Parameters
+    ----------
+    scenario
+        The base case.
+    weather
+        Its year.
+
+    Returns
+    -------
+    list of list of Alternative
+        For each temperature of the scenario, in its order.
+    """
+    sun = sun_position(weather)
+    per_feed: list[list[Alternative]] = []
+    for changed, to, other, bound in _others(scenario, weather):
+        for number, year in enumerate(heat_years(other, weather=weather, sun=sun)):
+            per_feed += [[]] * 0 if number < len(per_feed) else [[]]
+            per_feed[number].append(Alternative(changed, to, _heat(year), bound))
+    return per_feed
+
+
+def _heat(year: HeatYear) -> float:
+    return year.useful_kWh_m2
+
+
+def _others(scenario: Scenario, weather: WeatherYear) -> Iterator[tuple[str, str, Scenario, bool]]:
+    for step in ("wind", "sky", "tilted_sky", "diffuse"):
+        names = available_models(weather) if step == "sky" else list(CHOICES[step])
+        for name in names:
+            if name != getattr(scenario.models, step):
+                other, note = _with_model(scenario, step=step, name=name)
+                yield step, name + note, other, name == "ambient"
+    mounting = scenario.mounting
+    if mounting.wind_height_m is not None:
+        half = {"wind_height_m": None, "wind_factor": 0.5 * (mounting.wind_height_m / 10.0) ** (1.0 / 7.0)}
+    else:
+        half = {"wind_factor": 0.5 * (1.0 if mounting.wind_factor is None else mounting.wind_factor)}
+    yield "wind speed", "half", _with(scenario, mounting=mounting.model_copy(update=half)), False
+
+
+def _with_model(scenario: Scenario, *, step: str, name: str) -> tuple[Scenario, str]:
+    other = _with(scenario, models=scenario.models.model_copy(update={step: name}))
+    if name != "mitchell" or scenario.mounting.building_length_m is not None:
+        return other, ""
+    mounting = scenario.mounting.model_copy(update={"building_length_m": BUILDING_LENGTH})
+    return _with(other, mounting=mounting), f", {BUILDING_LENGTH:g} m building assumed"
+
+
+def _with(scenario: Scenario, **tables: Any) -> Scenario:
+    return scenario.model_copy(update=tables)

@@ -1,0 +1,218 @@
+"""The year of heat: scenario, weather year, sunlight on the plane, absorbed power, heat balance of every hour."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from scipy.constants import zero_Celsius
+
+from collector.balance.losses import Network, Surroundings, network_of
+from collector.balance.optics import Absorbed, absorbed_power, optics_of
+from collector.balance.steady import Feed, SteadyState, Stream, Uptake, operate, solve_stagnation, stream_of
+from collector.build.collector import Collector, collector_of
+from collector.build.scenario import Scenario
+from collector.physics.convection import WIND_RELATIONS
+from weather.errors import InputError, Problem
+from weather.plane import PlaneIrradiance, on_plane
+from weather.sky import sky_temperature
+from weather.stations import open_weather
+from weather.sun import Sun, sun_position
+from weather.year import Floats, Mask, WeatherYear
+
+__all__ = ["HeatYear", "feeds_of", "heat_years", "open_scenario_weather", "wind_at_collector"]
+
+WIND_PROFILE = 1.0 / 7.0  # exponent of the wind's rise with height over open country; common practice, no source
+
+
+@dataclass(frozen=True, kw_only=True)
+class HeatYear:
+    """One collector, one year, one temperature: every hour solved.
+
+    Parameters
+    ----------
+    feed
+        The fluid temperature held.
+    weather, plane, around, absorbed
+        What the hours bring.
+    still
+        All hours with the pump stopped.
+    hours, on
+        All hours as operated, and which of them run.
+    collector, network, stream
+        What was solved.
+    """
+
+    feed: Feed
+    weather: WeatherYear
+    plane: PlaneIrradiance
+    around: Surroundings
+    absorbed: Absorbed
+    still: SteadyState
+    hours: SteadyState
+    on: Mask
+    collector: Collector
+    network: Network
+    stream: Stream
+
+    @property
+    def useful_kWh_m2(self) -> float:  # noqa: N802 # the unit's symbol
+        """The year's heat per area of length x width."""
+        return float(self.hours.useful.sum() / 1e3)
+
+
+def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = None) -> list[HeatYear]:
+    """Solve a scenario's year, once for each temperature it asks for.
+
+    Parameters
+    ----------
+    scenario
+        Checked.
+    weather
+        The year it gets, n hours.
+    sun
+        At mid-hour, if it is known already.
+
+    Returns
+    -------
+    list of HeatYear
+        In the scenario's order of temperatures.
+
+    Raises
+    ------
+    InputError
+        The weather lacks what a model needs.
+    """
+    sun = sun or sun_position(weather)
+    collector = collector_of(scenario)
+    plane = _plane(scenario, weather=weather, sun=sun)
+    around = _surroundings(scenario, weather=weather, sun=sun)
+    absorbed = absorbed_power(optics_of(collector), plane)
+    network, stream = network_of(collector, pressure=weather.pressure), stream_of(collector)
+    still = solve_stagnation(network, around, absorbed)
+    years = []
+    for feed in feeds_of(scenario):
+        uptake = Uptake(collector=collector, stream=stream, feed=feed)
+        hours, on = operate(network, around, absorbed, uptake=uptake, still=still)
+        years.append(
+            HeatYear(
+                feed=feed,
+                weather=weather,
+                plane=plane,
+                around=around,
+                absorbed=absorbed,
+                still=still,
+                hours=hours,
+                on=on,
+                collector=collector,
+                network=network,
+                stream=stream,
+            )
+        )
+    return years
+
+
+def open_scenario_weather(scenario: Scenario, *, base: Path) -> WeatherYear:
+    """Weather year that a scenario names.
+
+    Parameters
+    ----------
+    scenario
+        Checked.
+    base
+        Folder of the scenario file.
+
+    Returns
+    -------
+    WeatherYear
+        Checked.
+    """
+    place = scenario.place
+    given = {
+        "latitude_deg": place.latitude,
+        "longitude_deg": place.longitude,
+        "altitude_m": place.altitude_m,
+        "utc_offset_h": place.utc_offset_h,
+    }
+    return open_weather(place.weather, base=base, place={key: value for key, value in given.items() if value is not None})
+
+
+def feeds_of(scenario: Scenario) -> Iterator[Feed]:
+    """Fluid temperatures that a scenario asks for.
+
+    Parameters
+    ----------
+    scenario
+        Checked.
+
+    Yields
+    ------
+    Feed
+        One a run.
+    """
+    operation = scenario.operation
+    if operation.inlet_C is not None:
+        yield Feed(operation.inlet_C + zero_Celsius, at_inlet=True)
+        return
+    means = operation.mean_C if isinstance(operation.mean_C, list) else [operation.mean_C]
+    yield from (Feed(mean + zero_Celsius, at_inlet=False) for mean in means if mean is not None)
+
+
+def wind_at_collector(scenario: Scenario, wind: Floats) -> tuple[Floats, str]:
+    """Wind at the collector, and in words how it comes from the file's.
+
+    Parameters
+    ----------
+    scenario
+        Its mounting.
+    wind
+        The file's, ``(n,)`` [m/s].
+
+    Returns
+    -------
+    ndarray
+        ``(n,)`` [m/s].
+    str
+        For the result.
+    """
+    mounting = scenario.mounting
+    if mounting.wind_height_m is not None:
+        factor = (mounting.wind_height_m / 10.0) ** WIND_PROFILE
+        return factor * wind, f"the file's wind from 10 m to {mounting.wind_height_m:g} m, x {factor:.3f}"
+    factor = 1.0 if mounting.wind_factor is None else mounting.wind_factor
+    return factor * wind, "the file's wind as it stands" if factor == 1.0 else f"the file's wind x {factor:g}"
+
+
+def _plane(scenario: Scenario, *, weather: WeatherYear, sun: Sun) -> PlaneIrradiance:
+    albedo = scenario.place.albedo
+    if isinstance(albedo, str):
+        if weather.albedo is None:
+            what, do = "albedo = 'file', but the file has no usable albedo", "give place.albedo as a number, 0 to 1"
+            raise InputError(Problem(where=weather.file, what=what, do=do))
+        ground: float | Floats = weather.albedo
+    else:
+        ground = albedo
+    mounting = scenario.mounting
+    return on_plane(
+        weather,
+        sun,
+        tilt_deg=mounting.tilt_deg,
+        azimuth_deg=mounting.azimuth_deg,
+        albedo=ground,
+        model=scenario.models.tilted_sky,
+    )
+
+
+def _surroundings(scenario: Scenario, *, weather: WeatherYear, sun: Sun) -> Surroundings:
+    models = scenario.models
+    wind, _ = wind_at_collector(scenario, weather.wind)
+    building = {"building_length": scenario.mounting.building_length_m} if models.wind == "mitchell" else {}
+    t_sky = sky_temperature(weather, solar_hour=sun.solar_hour, model=models.sky, pressure_term=models.sky_pressure_term)
+    return Surroundings(
+        t_air=weather.t_air,
+        t_sky=np.asarray(t_sky),
+        t_ground=weather.t_air,
+        h_wind=WIND_RELATIONS[models.wind].coefficient(wind, **building),
+    )
