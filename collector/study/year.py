@@ -156,8 +156,7 @@ def feeds_of(scenario: Scenario) -> Iterator[Feed]:
     if operation.inlet_C is not None:
         yield Feed(operation.inlet_C + zero_Celsius, at_inlet=True)
         return
-    means = operation.mean_C if isinstance(operation.mean_C, list) else [operation.mean_C]
-    yield from (Feed(mean + zero_Celsius, at_inlet=False) for mean in means if mean is not None)
+    yield from (Feed(mean + zero_Celsius, at_inlet=False) for mean in operation.mean_C or ())
 
 
 def wind_at_collector(scenario: Scenario, wind: Floats) -> tuple[Floats, str]:

@@ -1,0 +1,294 @@
+"""The scenario file's schema: every key with its unit, its bounds and its meaning."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Annotated, Any, Literal
+
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, WithJsonSchema, model_validator
+from pydantic_core import PydanticCustomError
+
+from collector.build.catalogue import shelf
+from collector.physics.convection import WIND_RELATIONS
+from collector.physics.fluids import freezing_point
+from collector.physics.glazing import slab_from_normal
+from weather.plane import MODELS as TILTED_SKY_MODELS
+from weather.sky import MODELS as SKY_MODELS
+
+__all__ = ["CHOICES", "RIVALS", "AbsorberTable", "CasingTable", "CoverTable", "Scenario"]
+
+CHOICES = {  # every step with a choice: its accepted names, each with its source; the schema's literals are held to them
+    "wind": {name: relation.source for name, relation in WIND_RELATIONS.items()},
+    "sky": SKY_MODELS,
+    "tilted_sky": TILTED_SKY_MODELS,
+    "longwave_view": {
+        "tilted": "sky and ground each by its view factor; Liu & Jordan 1963, Solar Energy 7, 53",
+        "sky": "the whole front faces the sky: an upper bound on the loss",
+    },
+    "absorptance_angle": {
+        "constant": "the normal value at every angle",
+        "flat-black": "falls with incidence; Beckman, Klein & Duffie 1977, in Duffie & Beckman, Eq. 4.11.1",
+    },
+    "diffuse": {
+        "integrated": "covers and plate integrated over the sky's and the ground's part of the hemisphere",
+        "effective-angle": "beam optics at one angle each; Brandemuehl & Beckman 1980, Solar Energy 24, 511",
+    },
+}
+RIVALS: dict[str, tuple[tuple[str, ...], ...]] = {  # sets of keys of a table of which exactly one set is to be given
+    "operation": (("inlet_C",), ("mean_C",)),
+    "cover": (("refractive_index", "extinction_per_m", "thickness_mm"), ("transmittance", "reflectance"), ("glass",)),
+    "coating": (("absorptance", "emittance"), ("coating",)),
+    "metal": (("conductivity_W_mK",), ("metal",)),
+    "back": (("back_conductivity_W_mK",), ("back_insulation",)),
+    "edge": (("edge_conductivity_W_mK",), ("edge_insulation",)),
+    "wind": (("wind_factor",), ("wind_height_m",)),
+}
+MOST_COVERS = 3
+
+
+def _quantity(low: float, high: float, unit: str, *, doc: str, default: Any = ...) -> Any:  # noqa: PLR0917 # reads as a range
+    return Field(default, ge=low, le=high, description=doc, json_schema_extra={"unit": unit})
+
+
+def _fault(message: str, *, key: str, allowed: str = "", got: str = "") -> PydanticCustomError:
+    context = {"key": key, "allowed": allowed, "got": got}
+    return PydanticCustomError("noonplate", message, context)  # type: ignore[arg-type] # pydantic wants a literal string; these are ours
+
+
+class _Table(BaseModel):
+    model_config = ConfigDict(strict=True, extra="forbid", allow_inf_nan=False, frozen=True)
+
+    def _one_of(self, sets: Sequence[Sequence[str]], *, optional: bool = False) -> None:
+        """Refuse keys of two rival sets together, a set in part, and no set at all."""
+        begun = [keys for keys in sets if any(getattr(self, key) is not None for key in keys)]
+        choices = ", or ".join(" with ".join(keys) for keys in sets)
+        if not begun and not optional:
+            raise _fault("nothing given", key=sets[0][0], allowed=choices)
+        if len(begun) > 1:
+            given = [key for keys in begun for key in keys if getattr(self, key) is not None]
+            raise _fault("keys that exclude each other", key=given[-1], allowed=choices, got=", ".join(given))
+        for key in begun[0] if begun else ():
+            if getattr(self, key) is None:
+                raise _fault("required key missing beside its companions", key=key, allowed=choices)
+
+    def _named(self, key: str, *, kind: str) -> None:
+        """Refuse a name that the catalogue does not hold."""
+        name = getattr(self, key)
+        if name is not None and name not in shelf(kind):
+            raise _fault("not in the catalogue", key=key, allowed=", ".join(shelf(kind)), got=repr(name))
+
+
+class PlaceTable(_Table):
+    """Where the collector stands."""
+
+    weather: str = Field(min_length=1, description="a bundled station, or a weather file's path relative to this file")
+    albedo: Annotated[float, Field(ge=0.0, le=1.0)] | Literal["file"] = Field(
+        description="ground reflectance, or 'file' for the weather file's own column",
+        json_schema_extra={"unit": "", "allowed": "0 to 1, or 'file'"},
+    )
+    latitude: float | None = _quantity(-90.0, 90.0, "deg", doc="north positive; for weather files that carry none", default=None)
+    longitude: float | None = _quantity(-180.0, 180.0, "deg", doc="east positive", default=None)
+    altitude_m: float | None = _quantity(-450.0, 9000.0, "m", doc="above sea level", default=None)
+    utc_offset_h: float | None = _quantity(-12.0, 14.0, "h", doc="local standard time minus UTC", default=None)
+
+
+class MountingTable(_Table):
+    """How it stands, and in which wind."""
+
+    tilt_deg: float = _quantity(0.0, 90.0, "deg", doc="from the horizontal")
+    azimuth_deg: float = _quantity(0.0, 360.0, "deg", doc="of the plane's normal, clockwise from north")
+    wind_factor: float | None = _quantity(0.0, 2.0, "", doc="wind at the collector over the file's; 1 if absent", default=None)
+    wind_height_m: float | None = _quantity(0.5, 200.0, "m", doc="or: brings the file's 10 m wind to this height", default=None)
+    building_length_m: float | None = _quantity(
+        2.0, 200.0, "m", doc="cube root of the building's volume, for the wind relation 'mitchell'", default=None
+    )
+
+    @model_validator(mode="after")
+    def _check(self) -> MountingTable:
+        self._one_of(RIVALS["wind"], optional=True)
+        return self
+
+
+class CoverTable(_Table):
+    """One cover, outermost first, and the gap beneath it."""
+
+    refractive_index: float | None = _quantity(1.0, 3.0, "", doc="of the cover's material", default=None)
+    extinction_per_m: float | None = _quantity(0.0, 1000.0, "1/m", doc="extinction coefficient", default=None)
+    thickness_mm: float | None = _quantity(0.01, 30.0, "mm", doc="of the cover", default=None)
+    transmittance: float | None = _quantity(0.05, 1.0, "", doc="or: solar, normal, of the whole cover", default=None)
+    reflectance: float | None = _quantity(0.0, 0.5, "", doc="solar, normal, of the whole cover", default=None)
+    glass: str | None = Field(None, description="or: a cover of the catalogue")
+    emittance: float | None = _quantity(0.01, 1.0, "", doc="long wave, either face; the catalogue's if a glass is named", default=None)
+    gap_mm: float = _quantity(1.0, 200.0, "mm", doc="gas layer beneath this cover")
+
+    @model_validator(mode="after")
+    def _check(self) -> CoverTable:
+        self._one_of(RIVALS["cover"])
+        self._named("glass", kind="covers")
+        if self.emittance is None and self.glass is None:
+            raise _fault("required key missing", key="emittance", allowed="0.01 to 1")
+        if self.transmittance is not None and self.reflectance is not None:
+            self._check_slab(self.transmittance, self.reflectance)
+        return self
+
+    def _check_slab(self, transmittance: float, reflectance: float) -> None:
+        try:
+            slab_from_normal(transmittance=transmittance, reflectance=reflectance)
+        except ValueError as reason:
+            got = f"{transmittance:g} with reflectance {reflectance:g}"
+            raise _fault(f"{reason}", key="transmittance", allowed="together at most 1", got=got) from None
+
+
+class AbsorberTable(_Table):
+    """Plate, coating and tubes."""
+
+    absorptance: float | None = _quantity(0.05, 1.0, "", doc="solar, normal", default=None)
+    emittance: float | None = _quantity(0.01, 1.0, "", doc="thermal, hemispherical", default=None)
+    coating: str | None = Field(None, description="or: a coating of the catalogue")
+    conductivity_W_mK: float | None = _quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)  # noqa: N815 # the file's key
+    metal: str | None = Field(None, description="or: a plate material of the catalogue")
+    thickness_mm: float = _quantity(0.05, 20.0, "mm", doc="of the plate")
+    tube_pitch_mm: float = _quantity(3.0, 1000.0, "mm", doc="from tube to tube")
+    tube_outer_mm: float = _quantity(2.0, 100.0, "mm", doc="outer diameter")
+    tube_inner_mm: float = _quantity(1.0, 100.0, "mm", doc="inner diameter")
+    bond_W_mK: float | None = _quantity(0.1, 1e5, "W/mK", doc="bond conductance; a perfect bond if absent", default=None)  # noqa: N815
+
+    @model_validator(mode="after")
+    def _check(self) -> AbsorberTable:
+        self._one_of(RIVALS["coating"])
+        self._one_of(RIVALS["metal"])
+        self._named("coating", kind="coatings")
+        self._named("metal", kind="metals")
+        if self.tube_inner_mm >= self.tube_outer_mm:
+            got, allowed = f"{self.tube_inner_mm:g} mm", f"below tube_outer_mm, {self.tube_outer_mm:g} mm"
+            raise _fault("tube without a wall", key="tube_inner_mm", allowed=allowed, got=got)
+        if self.tube_outer_mm > self.tube_pitch_mm:
+            got, allowed = f"{self.tube_outer_mm:g} mm", f"at most tube_pitch_mm, {self.tube_pitch_mm:g} mm"
+            raise _fault("tubes overlap", key="tube_outer_mm", allowed=allowed, got=got)
+        return self
+
+
+class CasingTable(_Table):
+    """Insulation behind the plate and around its edges."""
+
+    back_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="behind the plate")
+    back_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)  # noqa: N815 # the file's key
+    back_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
+    edge_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="around the edges")
+    edge_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)  # noqa: N815 # the file's key
+    edge_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
+    edge_height_mm: float = _quantity(0.0, 500.0, "mm", doc="of the edge that loses heat; 0 for none")
+
+    @model_validator(mode="after")
+    def _check(self) -> CasingTable:
+        self._one_of(RIVALS["back"])
+        self._one_of(RIVALS["edge"])
+        self._named("back_insulation", kind="insulation")
+        self._named("edge_insulation", kind="insulation")
+        return self
+
+
+class CollectorTable(_Table):
+    """The module and how many of it."""
+
+    modules: int = Field(ge=1, le=100_000, description="how many")
+    length_m: float = _quantity(0.1, 30.0, "m", doc="along the tubes")
+    width_m: float = _quantity(0.05, 30.0, "m", doc="across the tubes")
+    gross_area_m2: float | None = _quantity(0.01, 1000.0, "m2", doc="of a module, where results per gross area are wanted", default=None)
+    cover: list[CoverTable] = Field(
+        default_factory=list, max_length=MOST_COVERS, description="outermost first; none is an unglazed collector"
+    )
+    absorber: AbsorberTable
+    casing: CasingTable
+
+    @model_validator(mode="after")
+    def _check(self) -> CollectorTable:
+        area = self.length_m * self.width_m
+        if self.gross_area_m2 is not None and self.gross_area_m2 < area:
+            got, allowed = f"{self.gross_area_m2:g} m2", f"at least length x width, {area:g} m2"
+            raise _fault("gross area smaller than the collector", key="gross_area_m2", allowed=allowed, got=got)
+        if self.absorber.tube_pitch_mm > self.width_m * 1e3:
+            got, allowed = f"{self.absorber.tube_pitch_mm:g} mm", f"at most width_m, {self.width_m * 1e3:g} mm"
+            raise _fault("not one tube in the width", key="absorber.tube_pitch_mm", allowed=allowed, got=got)
+        return self
+
+
+class FluidTable(_Table):
+    """What flows, and how much."""
+
+    name: Literal["water", "propylene glycol", "ethylene glycol"] = Field(description="heat carrier")
+    mass_fraction: float = _quantity(0.0, 0.6, "", doc="of glycol in water", default=0.0)
+    flow_kg_s_m2: float = _quantity(0.0005, 0.5, "kg/s m2", doc="per m2 of length x width")
+
+    @model_validator(mode="after")
+    def _check(self) -> FluidTable:
+        if (self.name == "water") != (self.mass_fraction == 0.0):
+            allowed = "0 for water" if self.name == "water" else f"above 0 for {self.name}"
+            raise _fault("mass fraction does not fit the fluid", key="mass_fraction", allowed=allowed, got=f"{self.mass_fraction:g}")
+        return self
+
+
+_Temperature = Annotated[float, Field(ge=-50.0, le=200.0)]
+_Temperatures = Annotated[
+    list[_Temperature],
+    Field(min_length=1, max_length=50),
+    BeforeValidator(lambda given: given if isinstance(given, list) else [given]),
+    WithJsonSchema({"anyOf": [{"type": "number"}, {"type": "array", "items": {"type": "number"}}]}),
+]
+
+
+class OperationTable(_Table):
+    """The temperature that the load needs."""
+
+    inlet_C: float | None = _quantity(-50.0, 200.0, "C", doc="fluid temperature held at the inlet", default=None)  # noqa: N815 # the file's key
+    mean_C: _Temperatures | None = Field(  # noqa: N815 # the file's key
+        None,
+        description="or: mean fluid temperature, one or a list",
+        json_schema_extra={"unit": "C", "allowed": "a number or a list of numbers, each -50 to 200 C"},
+    )
+
+    @model_validator(mode="after")
+    def _check(self) -> OperationTable:
+        self._one_of(RIVALS["operation"])
+        return self
+
+
+class ModelsTable(_Table):
+    """Which published relation stands for each step; `noonplate models` lists them with their sources."""
+
+    wind: Literal["watmuff", "mcadams", "mitchell", "jayamaha"] = Field("watmuff", description="wind coefficient")
+    sky: Literal["berdahl-martin", "martin-berdahl", "brunt", "swinbank", "measured", "ambient"] = Field(
+        "berdahl-martin", description="sky temperature"
+    )
+    sky_pressure_term: bool = Field(default=False, description="altitude term of the Berdahl-Martin clear sky")
+    tilted_sky: Literal["perez-driesse", "perez", "hay-davies", "isotropic"] = Field("perez-driesse", description="diffuse on the plane")
+    longwave_view: Literal["tilted", "sky"] = Field("tilted", description="what the front radiates to")
+    absorptance_angle: Literal["constant", "flat-black"] = Field("constant", description="absorptance over incidence")
+    diffuse: Literal["integrated", "effective-angle"] = Field("integrated", description="optics of diffuse light")
+
+
+class Scenario(_Table):
+    """One collector at one place, run at one temperature or several."""
+
+    title: str = Field(min_length=1, max_length=200, description="stands over every table and figure")
+    place: PlaceTable
+    mounting: MountingTable
+    collector: CollectorTable
+    fluid: FluidTable
+    operation: OperationTable
+    models: ModelsTable = Field(default_factory=ModelsTable)
+
+    @model_validator(mode="after")
+    def _check(self) -> Scenario:
+        if self.models.wind == "mitchell" and self.mounting.building_length_m is None:
+            allowed = "the cube root of the building's volume in m"
+            raise _fault("required key missing: models.wind = 'mitchell' needs it", key="mounting.building_length_m", allowed=allowed)
+        key = "inlet_C" if self.operation.inlet_C is not None else "mean_C"
+        coldest = self.operation.inlet_C if self.operation.inlet_C is not None else min(self.operation.mean_C or [0.0])
+        freezing = freezing_point(self.fluid.name, mass_fraction=self.fluid.mass_fraction) - 273.15
+        if coldest < freezing:
+            got, allowed = f"{coldest:g} C", f"above {freezing:.1f} C, where {self.fluid.name} begins to freeze"
+            raise _fault("the fluid is frozen", key=f"operation.{key}", allowed=allowed, got=got)
+        return self
+
+
