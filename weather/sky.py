@@ -9,7 +9,9 @@ from weather.errors import InputError, Problem
 from weather.year import Floats, WeatherYear
 
 __all__ = [
+    "DEW_POINT_RANGE",
     "MODELS",
+    "NEEDS",
     "available_models",
     "berdahl_martin_emissivity",
     "brunt_emissivity",
@@ -30,6 +32,7 @@ MODELS = {
 }
 NEEDS = {"berdahl-martin": ("t_dew",), "martin-berdahl": ("t_dew", "cloud"), "brunt": ("t_dew",), "measured": ("longwave",)}
 COLUMNS = {"t_dew": "dew point", "cloud": "cloud cover", "longwave": "long-wave irradiance"}
+DEW_POINT_RANGE = (260.15, 297.15)  # K, of the fits to dew point; from memory
 CLOUD_BASE = 2000.0  # m, assumed for opaque cloud
 CLOUD_SCALE = 8200.0  # m, Martin & Berdahl 1984
 

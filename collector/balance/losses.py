@@ -12,7 +12,7 @@ from collector.physics.convection import air, gap_nusselt
 from collector.physics.radiation import parallel_plates_factor, radiative_flux, sky_view_factor
 from weather.year import Floats, Mask
 
-__all__ = ["Gap", "Losses", "Network", "Step", "Surroundings", "losses_at", "network_of", "newton_step"]
+__all__ = ["Gap", "Losses", "Network", "Step", "Surroundings", "gap_rayleigh", "network_of", "newton_step"]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -139,8 +139,8 @@ def network_of(collector: Collector, *, pressure: float) -> Network:
     )
 
 
-def losses_at(network: Network, around: Surroundings, *, sun_on_covers: Floats, nodes: Floats) -> Losses:
-    """Heat that leaves the plate at given temperatures.
+def newton_step(network: Network, around: Surroundings, *, sun_on_covers: Floats, nodes: Floats) -> Step:
+    """Linearise the losses at a state and eliminate the covers, from the outside in.
 
     Parameters
     ----------
@@ -150,22 +150,6 @@ def losses_at(network: Network, around: Surroundings, *, sun_on_covers: Floats, 
         Sunlight absorbed in each cover, ``(covers, n)`` [W/m2].
     nodes
         Temperatures, covers from the outside in and then the plate, ``(covers + 1, n)`` [K].
-
-    Returns
-    -------
-    Losses
-        By path, with the covers' imbalance for the audit.
-    """
-    return newton_step(network, around, sun_on_covers=sun_on_covers, nodes=nodes).losses
-
-
-def newton_step(network: Network, around: Surroundings, *, sun_on_covers: Floats, nodes: Floats) -> Step:
-    """Linearise the losses at a state and eliminate the covers, from the outside in.
-
-    Parameters
-    ----------
-    network, around, sun_on_covers, nodes
-        As for ``losses_at``.
 
     Returns
     -------
@@ -213,3 +197,24 @@ def _through_gap(network: Network, gap: Gap, *, t_upper: Floats, t_lower: Floats
     by_mean = 0.5 * difference * (nusselt * (gas.conductivity_slope / gap.thickness) + film * climb * gas.rayleigh_log_slope)
     radiation, by_lower, by_upper = radiative_flux(t_lower, t_upper, factor=gap.exchange)
     return convection, radiation, by_upper - by_difference + by_mean, by_lower + by_difference + by_mean
+
+
+def gap_rayleigh(network: Network, *, nodes: Floats) -> list[Floats]:
+    """Rayleigh number of each gap, for judging whether its relation covers it.
+
+    Parameters
+    ----------
+    network
+        The collector.
+    nodes
+        As for ``newton_step``, ``(covers + 1, n)`` [K].
+
+    Returns
+    -------
+    list of ndarray
+        Outermost first, each ``(n,)``.
+    """
+    return [
+        air(0.5 * (upper + lower), pressure=network.pressure).rayleigh * gap.thickness**3 * (lower - upper)
+        for gap, upper, lower in zip(network.gaps, nodes[:-1], nodes[1:], strict=True)
+    ]

@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from typing import Any, NamedTuple
 
 from collector.build.scenario import CHOICES, Scenario
-from collector.study.year import HeatYear, heat_years
+from collector.study.year import WIND_PROFILE, heat_years
 from weather.sky import available_models
 from weather.sun import sun_position
 from weather.year import WeatherYear
@@ -14,6 +14,7 @@ from weather.year import WeatherYear
 __all__ = ["Alternative", "alternatives"]
 
 BUILDING_LENGTH = 8.0  # m, cube root of a house of about 500 m3, where the scenario names no building
+STEPS = ("wind", "sky", "tilted_sky", "diffuse")
 
 
 class Alternative(NamedTuple):
@@ -41,20 +42,15 @@ def alternatives(scenario: Scenario, *, weather: WeatherYear) -> list[list[Alter
         For each temperature of the scenario, in its order.
     """
     sun = sun_position(weather)
-    per_feed: list[list[Alternative]] = []
-    for changed, to, other, bound in _others(scenario, weather):
-        for number, year in enumerate(heat_years(other, weather=weather, sun=sun)):
-            per_feed += [[]] * 0 if number < len(per_feed) else [[]]
-            per_feed[number].append(Alternative(changed, to, _heat(year), bound))
-    return per_feed
-
-
-def _heat(year: HeatYear) -> float:
-    return year.useful_kWh_m2
+    rows = [
+        [Alternative(changed, to, year.useful_kWh_m2, bound) for year in heat_years(other, weather=weather, sun=sun)]
+        for changed, to, other, bound in _others(scenario, weather)
+    ]
+    return [list(column) for column in zip(*rows, strict=True)]
 
 
 def _others(scenario: Scenario, weather: WeatherYear) -> Iterator[tuple[str, str, Scenario, bool]]:
-    for step in ("wind", "sky", "tilted_sky", "diffuse"):
+    for step in STEPS:
         names = available_models(weather) if step == "sky" else list(CHOICES[step])
         for name in names:
             if name != getattr(scenario.models, step):
@@ -62,10 +58,11 @@ def _others(scenario: Scenario, weather: WeatherYear) -> Iterator[tuple[str, str
                 yield step, name + note, other, name == "ambient"
     mounting = scenario.mounting
     if mounting.wind_height_m is not None:
-        half = {"wind_height_m": None, "wind_factor": 0.5 * (mounting.wind_height_m / 10.0) ** (1.0 / 7.0)}
+        factor = (mounting.wind_height_m / 10.0) ** WIND_PROFILE
     else:
-        half = {"wind_factor": 0.5 * (1.0 if mounting.wind_factor is None else mounting.wind_factor)}
-    yield "wind speed", "half", _with(scenario, mounting=mounting.model_copy(update=half)), False
+        factor = 1.0 if mounting.wind_factor is None else mounting.wind_factor
+    half = mounting.model_copy(update={"wind_height_m": None, "wind_factor": 0.5 * factor})
+    yield "wind speed", "half", _with(scenario, mounting=half), False
 
 
 def _with_model(scenario: Scenario, *, step: str, name: str) -> tuple[Scenario, str]:
@@ -73,7 +70,7 @@ def _with_model(scenario: Scenario, *, step: str, name: str) -> tuple[Scenario, 
     if name != "mitchell" or scenario.mounting.building_length_m is not None:
         return other, ""
     mounting = scenario.mounting.model_copy(update={"building_length_m": BUILDING_LENGTH})
-    return _with(other, mounting=mounting), f", {BUILDING_LENGTH:g} m building assumed"
+    return _with(other, mounting=mounting), f" ({BUILDING_LENGTH:g} m building)"
 
 
 def _with(scenario: Scenario, **tables: Any) -> Scenario:

@@ -22,9 +22,33 @@ from weather.stations import open_weather
 from weather.sun import Sun, sun_position
 from weather.year import Floats, Mask, WeatherYear
 
-__all__ = ["HeatYear", "feeds_of", "heat_years", "open_scenario_weather", "wind_at_collector"]
+__all__ = ["Conditions", "HeatYear", "heat_years", "open_scenario_weather", "wind_at_collector", "wind_coefficient"]
 
 WIND_PROFILE = 1.0 / 7.0  # exponent of the wind's rise with height over open country; common practice, no source
+
+
+@dataclass(frozen=True, kw_only=True)
+class Conditions:
+    """What is the same at every fluid temperature.
+
+    Parameters
+    ----------
+    weather, plane, around, absorbed
+        What the hours bring.
+    collector, network, stream
+        What is solved.
+    still
+        All hours with the pump stopped.
+    """
+
+    weather: WeatherYear
+    plane: PlaneIrradiance
+    around: Surroundings
+    absorbed: Absorbed
+    collector: Collector
+    network: Network
+    stream: Stream
+    still: SteadyState
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -33,29 +57,18 @@ class HeatYear:
 
     Parameters
     ----------
+    conditions
+        What the year was solved for.
     feed
         The fluid temperature held.
-    weather, plane, around, absorbed
-        What the hours bring.
-    still
-        All hours with the pump stopped.
     hours, on
         All hours as operated, and which of them run.
-    collector, network, stream
-        What was solved.
     """
 
+    conditions: Conditions
     feed: Feed
-    weather: WeatherYear
-    plane: PlaneIrradiance
-    around: Surroundings
-    absorbed: Absorbed
-    still: SteadyState
     hours: SteadyState
     on: Mask
-    collector: Collector
-    network: Network
-    stream: Stream
 
     @property
     def useful_kWh_m2(self) -> float:  # noqa: N802 # the unit's symbol
@@ -79,39 +92,40 @@ def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = No
     -------
     list of HeatYear
         In the scenario's order of temperatures.
-
-    Raises
-    ------
-    InputError
-        The weather lacks what a model needs.
     """
-    sun = sun or sun_position(weather)
     collector = collector_of(scenario)
+    sun = sun or sun_position(weather)
     plane = _plane(scenario, weather=weather, sun=sun)
-    around = _surroundings(scenario, weather=weather, sun=sun)
     absorbed = absorbed_power(optics_of(collector), plane)
+    around = _surroundings(scenario, weather=weather, sun=sun)
     network, stream = network_of(collector, pressure=weather.pressure), stream_of(collector)
     still = solve_stagnation(network, around, absorbed)
-    years = []
-    for feed in feeds_of(scenario):
-        uptake = Uptake(collector=collector, stream=stream, feed=feed)
-        hours, on = operate(network, around, absorbed, uptake=uptake, still=still)
-        years.append(
-            HeatYear(
-                feed=feed,
-                weather=weather,
-                plane=plane,
-                around=around,
-                absorbed=absorbed,
-                still=still,
-                hours=hours,
-                on=on,
-                collector=collector,
-                network=network,
-                stream=stream,
-            )
-        )
-    return years
+    conditions = Conditions(
+        weather=weather,
+        plane=plane,
+        around=around,
+        absorbed=absorbed,
+        collector=collector,
+        network=network,
+        stream=stream,
+        still=still,
+    )
+    return [_at(conditions, feed) for feed in _feeds(scenario)]
+
+
+def _at(conditions: Conditions, feed: Feed) -> HeatYear:
+    uptake = Uptake(collector=conditions.collector, stream=conditions.stream, feed=feed)
+    hours, on = operate(
+        conditions.network, conditions.around, conditions.absorbed, uptake=uptake, still=conditions.still
+    )
+    return HeatYear(conditions=conditions, feed=feed, hours=hours, on=on)
+
+
+def _feeds(scenario: Scenario) -> Iterator[Feed]:
+    operation = scenario.operation
+    if operation.inlet_C is not None:
+        yield Feed(operation.inlet_C + zero_Celsius, at_inlet=True)
+    yield from (Feed(mean + zero_Celsius, at_inlet=False) for mean in operation.mean_C or ())
 
 
 def open_scenario_weather(scenario: Scenario, *, base: Path) -> WeatherYear:
@@ -136,27 +150,8 @@ def open_scenario_weather(scenario: Scenario, *, base: Path) -> WeatherYear:
         "altitude_m": place.altitude_m,
         "utc_offset_h": place.utc_offset_h,
     }
-    return open_weather(place.weather, base=base, place={key: value for key, value in given.items() if value is not None})
-
-
-def feeds_of(scenario: Scenario) -> Iterator[Feed]:
-    """Fluid temperatures that a scenario asks for.
-
-    Parameters
-    ----------
-    scenario
-        Checked.
-
-    Yields
-    ------
-    Feed
-        One a run.
-    """
-    operation = scenario.operation
-    if operation.inlet_C is not None:
-        yield Feed(operation.inlet_C + zero_Celsius, at_inlet=True)
-        return
-    yield from (Feed(mean + zero_Celsius, at_inlet=False) for mean in operation.mean_C or ())
+    own = {key: value for key, value in given.items() if value is not None}
+    return open_weather(place.weather, base=base, place=own)
 
 
 def wind_at_collector(scenario: Scenario, wind: Floats) -> tuple[Floats, str]:
@@ -184,34 +179,56 @@ def wind_at_collector(scenario: Scenario, wind: Floats) -> tuple[Floats, str]:
     return factor * wind, "the file's wind as it stands" if factor == 1.0 else f"the file's wind x {factor:g}"
 
 
+def wind_coefficient(scenario: Scenario, wind: Floats) -> Floats:
+    """Heat transfer coefficient of the outermost face to the air, by the scenario's relation.
+
+    Parameters
+    ----------
+    scenario
+        Its relation and, where that needs it, its building.
+    wind
+        At the collector, ``(n,)`` [m/s].
+
+    Returns
+    -------
+    ndarray
+        ``(n,)`` [W/m2K].
+    """
+    building = {"building_length": scenario.mounting.building_length_m} if scenario.models.wind == "mitchell" else {}
+    return WIND_RELATIONS[scenario.models.wind].coefficient(wind, **building)
+
+
 def _plane(scenario: Scenario, *, weather: WeatherYear, sun: Sun) -> PlaneIrradiance:
-    albedo = scenario.place.albedo
-    if isinstance(albedo, str):
-        if weather.albedo is None:
-            what, do = "albedo = 'file', but the file has no usable albedo", "give place.albedo as a number, 0 to 1"
-            raise InputError(Problem(where=weather.file, what=what, do=do))
-        ground: float | Floats = weather.albedo
-    else:
-        ground = albedo
     mounting = scenario.mounting
     return on_plane(
         weather,
         sun,
         tilt_deg=mounting.tilt_deg,
         azimuth_deg=mounting.azimuth_deg,
-        albedo=ground,
+        albedo=_albedo(scenario, weather=weather),
         model=scenario.models.tilted_sky,
     )
+
+
+def _albedo(scenario: Scenario, *, weather: WeatherYear) -> float | Floats:
+    albedo = scenario.place.albedo
+    if not isinstance(albedo, str):
+        return albedo
+    if weather.albedo is None:
+        what, do = "albedo = 'file', but the file has no usable albedo", "give place.albedo as a number, 0 to 1"
+        raise InputError(Problem(where=weather.file, what=what, do=do))
+    return weather.albedo
 
 
 def _surroundings(scenario: Scenario, *, weather: WeatherYear, sun: Sun) -> Surroundings:
     models = scenario.models
     wind, _ = wind_at_collector(scenario, weather.wind)
-    building = {"building_length": scenario.mounting.building_length_m} if models.wind == "mitchell" else {}
-    t_sky = sky_temperature(weather, solar_hour=sun.solar_hour, model=models.sky, pressure_term=models.sky_pressure_term)
+    t_sky = sky_temperature(
+        weather, solar_hour=sun.solar_hour, model=models.sky, pressure_term=models.sky_pressure_term
+    )
     return Surroundings(
         t_air=weather.t_air,
         t_sky=np.asarray(t_sky),
         t_ground=weather.t_air,
-        h_wind=WIND_RELATIONS[models.wind].coefficient(wind, **building),
+        h_wind=wind_coefficient(scenario, wind),
     )

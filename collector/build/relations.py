@@ -1,0 +1,33 @@
+"""Published relations that stand without a choice, for the list that `noonplate models` prints."""
+
+from __future__ import annotations
+
+from collector.build.scenario import CHOICES
+from collector.physics.fluids import FLUIDS
+
+__all__ = ["FIXED", "relations"]
+
+FIXED = {
+    "sun": "solar position algorithm, Reda & Andreas 2004, NREL/TP-560-34302, at the middle of each hour; through pvlib",
+    "time stamps": "closure of GHI against DHI + DNI cos z over shifts of -95 to 95 min",
+    "covers": "Fresnel and absorption, both polarisations kept apart to the end; Duffie & Beckman, Sec. 5.1-5.3",
+    "long wave": "grey parallel surfaces, Stefan-Boltzmann; sky and ground by view factor",
+    "air gap to 55 deg": "Hollands, Unny, Raithby & Konicek 1976, J. Heat Transfer 98, 189",
+    "air gap from 65 deg": "ElSherbiny, Raithby & Hollands 1982, J. Heat Transfer 104, 96; from 55 to 65 deg a smooth blend",
+    "air gap from above": "still gas to 60 deg; from there in a straight line to the vertical layer (our joining rule, no source)",
+    "air": "Lemmon & Jacobsen 2004, Int. J. Thermophysics 25, 21, as cubic fits within 0.05 %",
+    "plate": "fin, bond and tube: F'; exponential along the flow: F_R; Duffie & Beckman, Sec. 6.5-6.7, at the loss's true slope",
+    "tube, laminar": "mean over the length with both profiles developing; Gnielinski, VDI Heat Atlas, ch. G1 (from memory)",
+    "tube, turbulent": "Gnielinski 1976, Int. Chem. Eng. 16, 359; from Re 2300 to 10000 linear between the two",
+}
+
+
+def relations() -> dict[str, dict[str, str]]:
+    """Every relation in use, with its source.
+
+    Returns
+    -------
+    dict
+        Choices by step of ``[models]``; the fluids; and, under ``fixed``, those without a choice.
+    """
+    return {**CHOICES, "fluid": FLUIDS, "fixed": FIXED}

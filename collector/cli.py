@@ -1,0 +1,223 @@
+"""The command line. At load it imports click and nothing else, so that help comes at once."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Callable
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+if TYPE_CHECKING:
+    from collector.study.account import Run
+
+__all__ = ["main"]
+
+VERSION = "0.1.0"  # a literal: asking the package's metadata costs a third of the time that help may take
+WRONG_INPUT, NOT_SOUND = 2, 3
+
+
+class _Commands(click.Group):
+    """A group whose commands end in a message and exit code 2 where the input is wrong."""
+
+    def invoke(self, ctx: click.Context) -> Any:
+        try:
+            return super().invoke(ctx)
+        except Exception as fault:
+            problems = getattr(fault, "problems", None)
+            if problems is None:
+                raise
+            for problem in problems:
+                click.echo(f"noonplate: {problem}", err=True)
+            if len(problems) > 1:
+                click.echo(f"noonplate: {len(problems)} faults", err=True)
+            ctx.exit(WRONG_INPUT)
+
+
+@click.group(cls=_Commands, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 80})
+@click.version_option(VERSION, prog_name="noonplate")
+def main() -> None:
+    """Kilowatt-hours a year from a flat-plate solar thermal collector.
+
+    Computed from its build sheet and a weather file, hour by hour, from first principles, with the sources shown.
+
+    Exit codes: 0 done; 2 the input is wrong; 3 it ran, but some hours did not converge or the sums do not close; 1 a bug.
+    """
+
+
+Decorator = Callable[[Callable[..., None]], Callable[..., None]]
+_json: Decorator = click.option("--json", "as_json", is_flag=True, help="One JSON object instead of text.")
+_set: Decorator = click.option(
+    "--set", "overrides", multiple=True, metavar="KEY=VALUE", help="Override a scenario key, such as fluid.flow_kg_s_m2=0.01."
+)
+_scenario: Decorator = click.argument("scenario", type=click.Path(path_type=Path))
+
+
+def _emit(content: dict[str, Any], *, text: Callable[[], str], as_json: bool) -> None:
+    from collector.show.files import json_text
+
+    click.echo(json_text(content) if as_json else text(), nl=False)
+
+
+@main.command()
+@click.argument("scenarios", metavar="SCENARIO...", nargs=-1, required=True, type=click.Path(path_type=Path))
+@_set
+@click.option(
+    "--out",
+    type=click.Path(path_type=Path, file_okay=True),
+    metavar="DIR",
+    help="Also write summary.json, months.csv, hours.csv and two figures a run.",
+)
+@_json
+def year(scenarios: tuple[Path, ...], overrides: tuple[str, ...], out: Path | None, as_json: bool) -> None:  # noqa: FBT001 # click's calling form
+    """The year of heat: totals, months, where the sunlight went.
+
+    Several scenarios, or several temperatures in one, give a comparison.
+    """
+    from collector.build.reading import read_scenario
+    from collector.show.files import open_folder
+    from collector.show.tables import comparison_text, year_text
+    from collector.study.account import runs_of
+
+    if out is not None:
+        open_folder(out)
+    checked = [(read_scenario(path, overrides=overrides), path.parent) for path in scenarios]
+    runs = [run for scenario, base in checked for run in runs_of(scenario, base=base)]
+    accounts = [run.account for run in runs]
+    content = {"runs": accounts}
+    if out is not None:
+        _write(runs, content, out=out)
+    _emit(content, text=lambda: year_text(accounts[0]) if len(runs) == 1 else comparison_text(accounts), as_json=as_json)
+    if not all(run.sound for run in runs):
+        click.echo("noonplate: hours without convergence, or sums that do not close: see the result", err=True)
+        sys.exit(NOT_SOUND)
+
+
+def _write(runs: list[Run], content: dict[str, Any], *, out: Path) -> None:
+    """Tables and figures of all runs; figures are numbered where there are several."""
+    from collector.show.files import csv_text, json_text, write_whole
+    from collector.show.plots import FIGURES, save_figure
+    from collector.study.account import HOUR_COLUMNS, hours_table
+
+    months = [(number, *month.values()) for number, run in enumerate(runs, start=1) for month in run.account["months"]]
+    hours = (
+        (number, *row)
+        for number, run in enumerate(runs, start=1)
+        for row in zip(*(column if isinstance(column, list) else column.tolist() for column in hours_table(run.year).values()), strict=True)
+    )
+    texts = {
+        "summary.json": json_text(content),
+        "months.csv": csv_text(["run", *runs[0].account["months"][0]], months),
+        "hours.csv": csv_text(["run", *HOUR_COLUMNS], hours),
+    }
+    for name, text in texts.items():
+        write_whole(out / name, write=lambda path, text=text: path.write_text(text, encoding="utf-8"))  # type: ignore[misc] # mypy can't type a default in a lambda
+    for number, run in enumerate(runs, start=1):
+        for name, draw in FIGURES.items():
+            figure = draw(run.account)
+            place = out / (f"{name}.png" if len(runs) == 1 else f"{name}-{number}.png")
+            write_whole(place, write=lambda path, figure=figure: save_figure(figure, path=path))  # type: ignore[misc]
+    click.echo(f"written to {out}: {', '.join(texts)}, {len(FIGURES) * len(runs)} figures", err=True)
+
+
+@main.command()
+@_scenario
+@click.option("--beam", type=float, required=True, help="Beam irradiance on the plane, W/m2.")
+@click.option("--sky-diffuse", type=float, required=True, help="Diffuse from the sky on the plane, W/m2.")
+@click.option("--ground", type=float, required=True, help="Reflected from the ground on the plane, W/m2.")
+@click.option("--incidence", type=float, required=True, help="Angle of incidence of the beam, deg.")
+@click.option("--air", type=float, required=True, help="Air temperature, C.")
+@click.option("--sky-temp", type=float, required=True, help="Sky temperature, C.")
+@click.option("--ground-temp", type=float, help="Ground temperature, C; the air's if not given.")
+@click.option("--wind", type=float, required=True, help="Wind at the collector, m/s.")
+@click.option("--inlet", type=float, help="Fluid inlet temperature, C.")
+@click.option("--mean", type=float, help="Or: mean fluid temperature, C.")
+@click.option("--stagnation", is_flag=True, help="Or: no flow.")
+@_set
+@_json
+def point(scenario: Path, overrides: tuple[str, ...], stagnation: bool, as_json: bool, **given: float | None) -> None:  # noqa: FBT001
+    """One operating point by hand.
+
+    U values are slopes at the plate's temperature; F' and F_R belong to that slope. The scenario's weather is not read.
+    """
+    if sum([stagnation, given["inlet"] is not None, given["mean"] is not None]) != 1:
+        raise click.UsageError("give exactly one of --inlet, --mean and --stagnation")
+    from collector.build.reading import read_scenario
+    from collector.show.tables import point_text
+    from collector.study.point import Point, solve_point
+
+    if given["ground_temp"] is None:
+        given["ground_temp"] = given["air"]
+    stands = Point(**given)  # type: ignore[arg-type] # click has seen to the required ones
+    found = solve_point(read_scenario(scenario, overrides=overrides), stands)
+    _emit(found, text=lambda: point_text(found), as_json=as_json)
+    if not found["converged"]:
+        sys.exit(NOT_SOUND)
+
+
+@main.command()
+@click.argument("file", type=click.Path(path_type=Path))
+@_json
+def new(file: Path, as_json: bool) -> None:  # noqa: FBT001
+    """Write a starter scenario, each key explained."""
+    from importlib.resources import files
+
+    from collector.show.files import write_whole
+    from weather.errors import InputError, Problem
+
+    if file.exists():
+        raise InputError(Problem(where=str(file), what="there is a file of this name already", do="choose another name; nothing was changed"))
+    if not file.parent.is_dir():
+        raise InputError(Problem(where=str(file), what="no such folder", got=str(file.parent), do="make the folder first"))
+    starter = (files("collector.build") / "data" / "starter.toml").read_text(encoding="utf-8")
+    write_whole(file, write=lambda path: path.write_text(starter, encoding="utf-8") and None)
+    _emit({"written": str(file)}, text=lambda: f"written: {file}\nnext: noonplate check {file}; noonplate year {file}\n", as_json=as_json)
+
+
+@main.command()
+@_scenario
+@_set
+@_json
+def check(scenario: Path, overrides: tuple[str, ...], as_json: bool) -> None:  # noqa: FBT001
+    """Check a scenario and its weather file without solving the year."""
+    from collector.build.reading import read_scenario
+    from collector.show.tables import check_text
+    from collector.study.account import inspected
+
+    found = inspected(read_scenario(scenario, overrides=overrides), base=scenario.parent)
+    _emit(found, text=lambda: check_text(found), as_json=as_json)
+
+
+@main.command()
+@_json
+def schema(as_json: bool) -> None:  # noqa: FBT001
+    """Print the scenario file's JSON schema, for editors."""
+    del as_json  # it is JSON either way
+    from collector.build.scenario import Scenario
+
+    _emit(Scenario.model_json_schema(), text=str, as_json=True)
+
+
+@main.command()
+@_json
+def models(as_json: bool) -> None:  # noqa: FBT001
+    """Every relation in use, with its source."""
+    from collector.build.relations import relations
+    from collector.show.tables import models_text
+
+    found = relations()
+    _emit(dict(found), text=lambda: models_text(found), as_json=as_json)
+
+
+@main.command()
+@click.argument("shelf", required=False, type=click.Choice(["covers", "coatings", "metals", "insulation"]))
+@_json
+def catalogue(shelf: str | None, as_json: bool) -> None:  # noqa: FBT001
+    """Generic materials, with their sources."""
+    from collector.build.catalogue import SHELVES
+    from collector.build.catalogue import shelf as entries
+    from collector.show.tables import catalogue_text
+
+    found = {name: entries(name) for name in ([shelf] if shelf else SHELVES)}
+    _emit(dict(found), text=lambda: catalogue_text(found), as_json=as_json)

@@ -1,0 +1,1 @@
+"""Text, figures and files from results. Nothing here computes physics."""

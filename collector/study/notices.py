@@ -1,0 +1,111 @@
+"""What a result must say of itself: hours filled, out of a relation's range, or not solved."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+from scipy.constants import zero_Celsius
+
+from collector.balance.losses import gap_rayleigh
+from collector.build.scenario import Scenario
+from collector.physics.convection import WIND_RELATIONS
+from collector.physics.fluids import valid_range
+from collector.study.year import HeatYear, wind_at_collector
+from weather.sky import DEW_POINT_RANGE, NEEDS
+from weather.year import Floats
+
+__all__ = ["notices_of"]
+
+HIGHEST_RAYLEIGH = 1e5  # Hollands et al. 1976
+LEAST_ASPECT = 12.0  # Hollands et al. 1976
+TRANSITION = (2300.0, 10_000.0)  # Reynolds numbers between laminar and turbulent tube flow
+
+
+def notices_of(year: HeatYear, scenario: Scenario) -> list[str]:
+    """Everything that was filled, clipped, mended, out of range or not converged, a sentence each.
+
+    Parameters
+    ----------
+    year
+        Solved.
+    scenario
+        What it was solved for.
+
+    Returns
+    -------
+    list of str
+        Each with its count; empty if there is nothing to say.
+    """
+    return [
+        *year.conditions.weather.notices,
+        *year.conditions.plane.notices,
+        *_unsolved(year),
+        *_fluid(year, scenario),
+        *_film(year),
+        *_wind(year, scenario),
+        *_sky(year, scenario),
+        *_gaps(year),
+    ]
+
+
+def _unsolved(year: HeatYear) -> Iterator[str]:
+    for name, state in (("as operated", year.hours), ("with the pump stopped", year.conditions.still)):
+        open_hours = np.count_nonzero(~state.converged)
+        if open_hours:
+            yield f"{open_hours} h did not converge {name}: their numbers are not to be trusted"
+
+
+def _fluid(year: HeatYear, scenario: Scenario) -> Iterator[str]:
+    fluid = scenario.fluid
+    low, high = valid_range(fluid.name, mass_fraction=fluid.mass_fraction)
+    t_mean = year.hours.t_mean[year.on]
+    outside = np.count_nonzero((t_mean < low) | (t_mean > high))
+    if outside:
+        span = f"{low - zero_Celsius:.0f} to {high - zero_Celsius:.0f} C"
+        yield f"{fluid.name}: {outside} running h outside the data's {span}, held at its end"
+
+
+def _film(year: HeatYear) -> Iterator[str]:
+    stream = year.conditions.stream
+    reynolds = np.interp(year.hours.t_mean[year.on], stream.t, stream.reynolds)
+    between = np.count_nonzero((reynolds > TRANSITION[0]) & (reynolds < TRANSITION[1]))
+    if between:
+        lowest, highest = reynolds.min(), reynolds.max()
+        yield (
+            f"tube flow between laminar and turbulent in {between} running h (Re {lowest:.0f} to {highest:.0f}): "
+            "film interpolated"
+        )
+
+
+def _wind(year: HeatYear, scenario: Scenario) -> Iterator[str]:
+    limit = WIND_RELATIONS[scenario.models.wind].limit
+    wind, _ = wind_at_collector(scenario, year.conditions.weather.wind)
+    above = wind[year.on] > limit
+    if above.any():
+        yield (
+            f"wind relation '{scenario.models.wind}' was found up to {limit:g} m/s: {np.count_nonzero(above)} running h "
+            f"are above (to {wind[year.on].max():.1f} m/s), extrapolated"
+        )
+
+
+def _sky(year: HeatYear, scenario: Scenario) -> Iterator[str]:
+    t_dew = year.conditions.weather.t_dew
+    if t_dew is None or "t_dew" not in NEEDS.get(scenario.models.sky, ()):
+        return
+    low, high = DEW_POINT_RANGE
+    outside = np.count_nonzero((t_dew[year.on] < low) | (t_dew[year.on] > high))
+    if outside:
+        span = f"{low - zero_Celsius:.0f} to {high - zero_Celsius:.0f} C"
+        yield f"sky relation '{scenario.models.sky}': {outside} running h with a dew point outside {span}, extrapolated"
+
+
+def _gaps(year: HeatYear) -> Iterator[str]:
+    conditions = year.conditions
+    rows: list[Floats] = gap_rayleigh(conditions.network, nodes=year.hours.nodes[:, year.on])
+    for number, (gap, rayleigh) in enumerate(zip(conditions.network.gaps, rows, strict=True), start=1):
+        above = np.count_nonzero(rayleigh > HIGHEST_RAYLEIGH)
+        if above:
+            yield f"gap {number}: {above} running h with a Rayleigh number above 1e5, extrapolated"
+        if gap.aspect < LEAST_ASPECT:
+            yield f"gap {number}: length over thickness {gap.aspect:.1f}, relation found from {LEAST_ASPECT:.0f}: extrapolated"
