@@ -104,7 +104,7 @@ def _write(runs: list[Run], content: dict[str, Any], *, out: Path) -> None:
     hours = (
         (number, *row)
         for number, run in enumerate(runs, start=1)
-        for row in zip(*(column if isinstance(column, list) else column.tolist() for column in hours_table(run.year).values()), strict=True)
+        for row in zip(*(column if isinstance(column, list) else column.tolist() for column in hours_table(run).values()), strict=True)
     )
     texts = {
         "summary.json": json_text(content),

@@ -55,14 +55,14 @@ def product_hour(build: dict, condition: dict) -> dict:
     around = Surroundings(**{name: np.array([condition[name]]) for name in ("t_air", "t_sky", "t_ground", "h_wind")})
     absorbed = absorbed_power(optics_of(collector), PlaneIrradiance(**one, notices=()))
     network = network_of(collector, pressure=condition["pressure"])
-    still = solve_stagnation(network, around, absorbed)
-    if "stagnation" in condition:
-        state, on = still, np.array([False])
-    else:
+    state = solve_stagnation(network, around, absorbed)
+    on = np.array([False])
+    if "stagnation" not in condition:
         at_inlet = "t_inlet" in condition
         feed = Feed(condition["t_inlet" if at_inlet else "t_mean"], at_inlet)
         uptake = Uptake(collector=collector, stream=stream_of(collector), feed=feed)
-        state, on = operate(network, around, absorbed, uptake=uptake, still=still)
+        running, on = operate(network, around, absorbed, uptake=uptake)
+        state = state.replaced(on, running)
     return {
         "t_plate": float(state.t_plate[0]),
         "q_useful": float(state.useful[0]),

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -19,6 +20,7 @@ from weather.year import Floats, Mask
 __all__ = ["Feed", "SteadyState", "Stream", "Uptake", "operate", "solve_running", "solve_stagnation", "stream_of"]
 
 TOLERANCE = 1e-8  # W/m2, of every node's balance
+SOLVED = 1e-6  # W/m2, beyond which an hour counts as not converged
 MOST_ITERATIONS = 60
 LONGEST_STEP = 60.0  # K
 SETTLED = 4  # iterations after which the fluid's properties stay at a mean temperature found to 1e-4 K
@@ -40,22 +42,25 @@ class Stream:
     capacity_rate: Floats
     reynolds: Floats
 
-    def film(self, t: Floats) -> Floats:
-        """Film coefficient at a mean fluid temperature, held at the ends of the fluid's range [W/m2K]."""
-        return np.asarray(np.interp(t, self.t, self.h_film))
+    def at(self, t: Floats) -> Flow:
+        """Return both at a mean fluid temperature, held at the ends of the fluid's range."""
+        return Flow(np.interp(t, self.t, self.h_film), np.interp(t, self.t, self.capacity_rate))
 
-    def capacity(self, t: Floats) -> Floats:
-        """Heat capacity flow per collector area, held at the ends of the fluid's range [W/m2K]."""
-        return np.asarray(np.interp(t, self.t, self.capacity_rate))
+
+class Flow(NamedTuple):
+    """Film coefficient in the tube [W/m2K] and heat capacity flow per collector area [W/m2K], one or ``(n,)``."""
+
+    h_film: Floats
+    capacity_rate: Floats
 
 
 class Coupling(NamedTuple):
-    """How the plate hangs on the fed temperature: conductance [W/m2K], F', F_R, mean fluid temperature [K]."""
+    """How the plate hangs on the fed temperature: conductance [W/m2K], F', F_R, and plate to mean fluid [m2K/W]."""
 
     conductance: Floats
     f_prime: Floats
     f_r: Floats
-    t_mean: Floats
+    resistance: Floats
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -99,6 +104,24 @@ class SteadyState:
         """Mean plate temperature, ``(n,)`` [K]."""
         return self.nodes[-1]
 
+    def at(self, hours: Mask) -> SteadyState:
+        """Return the same for some of the hours."""
+        return self._each(lambda values, _: values[..., hours], self)
+
+    def replaced(self, hours: Mask, other: SteadyState) -> SteadyState:
+        """Return these hours with those of the mask taken from another, which has only them."""
+
+        def put(values: Floats, new: Floats) -> Floats:
+            merged = values.copy()
+            merged[..., hours] = new
+            return merged
+
+        return self._each(put, other)
+
+    def _each(self, change: Callable[[Floats, Floats], Floats], other: SteadyState) -> SteadyState:
+        changed = {name: change(value, getattr(other, name)) for name, value in vars(self).items() if name != "losses"}
+        return SteadyState(losses=Losses(*map(change, self.losses, other.losses)), **changed)
+
 
 def stream_of(collector: Collector) -> Stream:
     """Film and heat capacity of the flow in one tube, tabulated over the fluid's range.
@@ -137,7 +160,7 @@ class Uptake:
     stream: Stream
     feed: Feed
 
-    def coupling(self, slope: Floats, *, t_plate: Floats, t_mean: Floats) -> Coupling:
+    def coupling(self, slope: Floats, *, flow: Flow) -> Coupling:
         """Conductance from the mean plate to the fed temperature at a given slope of the loss.
 
         Eliminating the absorbed power from q = F_R (S - U (t_in - t_0)) and the mean plate temperature that goes with it
@@ -147,13 +170,13 @@ class Uptake:
         ----------
         slope
             Of the loss, ``(n,)`` [W/m2K].
-        t_plate, t_mean
-            Mean plate and, so far, mean fluid temperature, ``(n,)`` [K].
+        flow
+            At the mean fluid temperature.
 
         Returns
         -------
         Coupling
-            With a mean fluid temperature that is one step better.
+            To the inlet, or to the mean where that is held.
 
         Notes
         -----
@@ -174,20 +197,27 @@ class Uptake:
             outer=absorber.outer,
             inner=absorber.inner,
             bond_resistance=absorber.bond_resistance,
-            h_film=self.stream.film(t_mean),
+            h_film=flow.h_film,
         )
         f_prime = efficiency_factor(slope, resistance)
-        f_r = f_prime * capacity_ratio_factor(slope, f_prime=f_prime, capacity_rate=self.stream.capacity(t_mean))
-        if not self.feed.at_inlet:
-            return Coupling(1.0 / resistance, f_prime, f_r, t_mean)
-        conductance = f_r * slope / (1.0 - f_r)
-        useful = conductance * (t_plate - self.feed.temperature)
-        return Coupling(conductance, f_prime, f_r, t_plate - useful * resistance)
+        f_r = f_prime * capacity_ratio_factor(slope, f_prime=f_prime, capacity_rate=flow.capacity_rate)
+        conductance = f_r * slope / (1.0 - f_r) if self.feed.at_inlet else 1.0 / resistance
+        return Coupling(conductance, f_prime, f_r, resistance)
 
-    def outlet(self, t_mean: Floats, *, useful: Floats) -> Floats:
+    def useful(self, coupling: Coupling, *, t_plate: Floats) -> Floats:
+        """Heat taken up at a plate temperature [W/m2]."""
+        return coupling.conductance * (t_plate - self.feed.temperature)
+
+    def mean(self, coupling: Coupling, *, t_plate: Floats, useful: Floats) -> Floats:
+        """Mean fluid temperature [K]."""
+        if not self.feed.at_inlet:
+            return np.full_like(t_plate, self.feed.temperature)
+        return t_plate - useful * coupling.resistance
+
+    def outlet(self, *, flow: Flow, useful: Floats) -> Floats:
         """Outlet temperature: from the inlet by the heat taken up, or half of that above the mean (straight rise) [K]."""
-        rise = useful / self.stream.capacity(t_mean)
-        return np.asarray(self.feed.temperature + (rise if self.feed.at_inlet else 0.5 * rise))
+        rise = useful / flow.capacity_rate
+        return self.feed.temperature + (rise if self.feed.at_inlet else 0.5 * rise)
 
 
 def solve_stagnation(network: Network, around: Surroundings, absorbed: Absorbed) -> SteadyState:
@@ -205,7 +235,8 @@ def solve_stagnation(network: Network, around: Surroundings, absorbed: Absorbed)
     """
     loosely = 2.0 + network.u_back + network.u_edge + (0.0 if network.gaps else around.h_wind)
     t_plate = around.t_air + np.minimum(absorbed.plate / loosely, 120.0)
-    return _solve(network, around, absorbed, nodes=_first_guess(network, around, t_plate=t_plate), uptake=None)
+    first = _first_guess(network, around, t_plate=t_plate)
+    return _solve(network, around, absorbed, nodes=first, uptake=None, t_mean=t_plate)
 
 
 def solve_running(network: Network, around: Surroundings, absorbed: Absorbed, *, uptake: Uptake) -> SteadyState:
@@ -221,14 +252,21 @@ def solve_running(network: Network, around: Surroundings, absorbed: Absorbed, *,
     Returns
     -------
     SteadyState
-        The caller keeps the hours with a gain; stagnation above the fed temperature tells which.
+        Hours that lose heat have a negative useful gain.
     """
-    t_plate = uptake.feed.temperature + absorbed.plate / 100.0
-    return _solve(network, around, absorbed, nodes=_first_guess(network, around, t_plate=t_plate), uptake=uptake)
+    feed = uptake.feed.temperature
+    flow = uptake.stream.at(np.array([feed]))
+    loss = 4.0 + network.u_back + network.u_edge  # W/m2K, near enough for a first guess
+    conductance = uptake.coupling(np.array([loss]), flow=flow).conductance
+    useful = absorbed.plate - loss * (feed - around.t_air)
+    t_plate = feed + useful / (conductance + loss)
+    t_mean = feed + (0.45 / flow.capacity_rate) * np.maximum(useful, 0.0)
+    first = _first_guess(network, around, t_plate=t_plate)
+    return _solve(network, around, absorbed, nodes=first, uptake=uptake, t_mean=t_mean)
 
 
 def operate(
-    network: Network, around: Surroundings, absorbed: Absorbed, *, uptake: Uptake, still: SteadyState
+    network: Network, around: Surroundings, absorbed: Absorbed, *, uptake: Uptake
 ) -> tuple[SteadyState, Mask]:
     """Hours as a pump would have them: running where there is heat to gain, standing still otherwise.
 
@@ -236,32 +274,25 @@ def operate(
     ----------
     network, around, absorbed, uptake
         As for ``solve_running``.
-    still
-        The same hours at stagnation. A plate that stagnates above the fed temperature has heat to give, and only then.
 
     Returns
     -------
     SteadyState
-        All n hours.
+        The hours that run, and only those.
     ndarray of bool
-        Which of them run, ``(n,)``.
+        Which of the n hours they are, ``(n,)``.
+
+    Notes
+    -----
+    The gain has the sign of the absorbed power less the loss of a plate at the fed temperature, so that an hour that loses
+    when solved is an hour to stand still. With no sun and nothing around warmer than the fluid there is nothing to solve.
     """
-    on = still.t_plate > uptake.feed.temperature
-    running = solve_running(network, around.at(on), absorbed.at(on), uptake=uptake)
-    return _merge(still, running, on), on
-
-
-def _merge(whole: SteadyState, part: SteadyState, hours: Mask) -> SteadyState:
-    def put(into: Floats, values: Floats) -> Floats:
-        merged = into.copy()
-        merged[..., hours] = values
-        return merged
-
-    fields = {
-        name: Losses(*map(put, value, getattr(part, name))) if isinstance(value, Losses) else put(value, getattr(part, name))
-        for name, value in vars(whole).items()
-    }
-    return SteadyState(**fields)
+    warmest = np.maximum(np.maximum(around.t_air, around.t_sky), around.t_ground)
+    on = (absorbed.plate > 0.0) | (warmest > uptake.feed.temperature)
+    state = solve_running(network, around.at(on), absorbed.at(on), uptake=uptake)
+    gains = state.useful > 0.0
+    on[on] = gains
+    return state.at(gains), on
 
 
 def _first_guess(network: Network, around: Surroundings, *, t_plate: Floats) -> Floats:
@@ -271,44 +302,51 @@ def _first_guess(network: Network, around: Surroundings, *, t_plate: Floats) -> 
 
 
 def _solve(
-    network: Network, around: Surroundings, absorbed: Absorbed, *, nodes: Floats, uptake: Uptake | None
+    network: Network, around: Surroundings, absorbed: Absorbed, *, nodes: Floats, uptake: Uptake | None, t_mean: Floats
 ) -> SteadyState:
-    """Newton on plate and covers of all hours at once; hours that balance drop out."""
-    solved, hours = nodes.copy(), np.arange(nodes.shape[1])
-    solved_mean = np.full(hours.size, uptake.feed.temperature if uptake else 0.0)
-    here, sun, t_mean = around, absorbed, solved_mean
+    """Newton on plate and covers of all hours at once; hours that balance are put away."""
+    hours = np.arange(nodes.shape[1])
+    here, sun, flow = around, absorbed, _flow(uptake, t_mean)
+    solved, solved_flow = nodes, flow
     for iteration in range(MOST_ITERATIONS):
         step = newton_step(network, here, sun_on_covers=sun.covers, nodes=nodes)
-        draw = _draw(uptake, step, t_plate=nodes[-1], t_mean=t_mean, settle=iteration < SETTLED)
-        going = _imbalance(step.losses, sun=sun.plate, useful=draw.useful) > TOLERANCE
-        solved[:, hours], solved_mean[hours] = nodes, draw.t_mean
+        useful, conductance, t_mean = _drawn(uptake, flow, slope=step.slope, t_plate=nodes[-1])
+        going = _imbalance(step.losses, sun=sun.plate, useful=useful) > TOLERANCE
         if not going.any():
             break
-        plate = (sun.plate - draw.useful - step.loss) / (step.slope + draw.slope)
+        plate = (sun.plate - useful - step.loss) / (step.slope + conductance)
         longest = LONGEST_STEP if iteration < 20 else LONGEST_STEP / 2 ** (iteration - 19)
-        nodes, t_mean = nodes + np.clip(step.move(plate=plate), -longest, longest), draw.t_mean
-        if np.count_nonzero(going) < 0.8 * going.size:
-            nodes, hours, here, sun = nodes[:, going], hours[going], here.at(going), sun.at(going)
-            t_mean = t_mean[going]
-    return _state(network, around, absorbed, nodes=solved, t_mean=solved_mean, uptake=uptake)
+        nodes, held = nodes + np.clip(step.move(plate=plate), -longest, longest), flow
+        flow = _flow(uptake, t_mean) if iteration < SETTLED else flow
+        if np.count_nonzero(going) < 0.7 * going.size:
+            solved, solved_flow = _put(solved, nodes, hours), _put(solved_flow, held, hours)
+            nodes, flow, hours, here, sun = nodes[:, going], flow[:, going], hours[going], here.at(going), sun.at(going)
+    solved, solved_flow = _put(solved, nodes, hours), _put(solved_flow, flow, hours)
+    return _state(network, around, absorbed, nodes=solved, flow=solved_flow, uptake=uptake)
 
 
-class _Draw(NamedTuple):
-    """Heat that the fluid draws [W/m2], its slope to the plate's temperature [W/m2K], mean fluid temperature [K]."""
+def _put(whole: Floats, part: Floats, hours: Floats) -> Floats:
+    """Some hours' columns put in their places; the part itself where it is the whole."""
+    if part.shape == whole.shape:
+        return part
+    merged = whole.copy()
+    merged[:, hours] = part
+    return merged
 
-    useful: Floats
-    slope: Floats
-    t_mean: Floats
+
+def _flow(uptake: Uptake | None, t_mean: Floats) -> Floats:
+    """Film and heat capacity flow at a mean fluid temperature, ``(2, n)``; no rows where nothing flows."""
+    return np.array(uptake.stream.at(t_mean)) if uptake else np.empty((0, t_mean.size))
 
 
-def _draw(uptake: Uptake | None, step: Step, *, t_plate: Floats, t_mean: Floats, settle: bool) -> _Draw:
-    """Heat drawn at a plate temperature. The fluid's properties follow its temperature until they are settled."""
+def _drawn(uptake: Uptake | None, flow: Floats, *, slope: Floats, t_plate: Floats) -> tuple[Floats, Floats, Floats]:
+    """Heat that the fluid draws, its slope to the plate's temperature, and the mean fluid temperature."""
     if uptake is None:
         none = np.zeros_like(t_plate)
-        return _Draw(none, none, t_mean)
-    coupling = uptake.coupling(step.slope, t_plate=t_plate, t_mean=t_mean)
-    useful = coupling.conductance * (t_plate - uptake.feed.temperature)
-    return _Draw(useful, coupling.conductance, coupling.t_mean if settle else t_mean)
+        return none, none, t_plate
+    coupling = uptake.coupling(slope, flow=Flow(*flow))
+    useful = uptake.useful(coupling, t_plate=t_plate)
+    return useful, coupling.conductance, uptake.mean(coupling, t_plate=t_plate, useful=useful)
 
 
 def _imbalance(losses: Losses, *, sun: Floats, useful: Floats | float) -> Floats:
@@ -317,18 +355,19 @@ def _imbalance(losses: Losses, *, sun: Floats, useful: Floats | float) -> Floats
     return np.maximum(plate, np.abs(losses.cover_residual).max(axis=0)) if len(losses.cover_residual) else plate
 
 
-def _state(network: Network, around: Surroundings, absorbed: Absorbed, *, nodes: Floats, t_mean: Floats, uptake: Uptake | None) -> SteadyState:
+def _state(
+    network: Network, around: Surroundings, absorbed: Absorbed, *, nodes: Floats, flow: Floats, uptake: Uptake | None
+) -> SteadyState:
     """Everything about the hours at the temperatures found, each balance taken afresh."""
     step = newton_step(network, around, sun_on_covers=absorbed.covers, nodes=nodes)
-    t_plate = nodes[-1]
-    useful = np.zeros_like(t_plate)
-    t_outlet, f_prime, f_r = t_plate, np.ones_like(t_plate), np.zeros_like(t_plate)
-    if uptake is None:
-        t_mean = t_plate
-    else:
-        conductance, f_prime, f_r, t_mean = uptake.coupling(step.slope, t_plate=t_plate, t_mean=t_mean)
-        useful = conductance * (t_plate - uptake.feed.temperature)
-        t_outlet = uptake.outlet(t_mean, useful=useful)
+    t_mean = t_outlet = t_plate = nodes[-1]
+    useful, f_prime, f_r = np.zeros_like(t_plate), np.ones_like(t_plate), np.zeros_like(t_plate)
+    if uptake:
+        coupling = uptake.coupling(step.slope, flow=Flow(*flow))
+        f_prime, f_r = coupling.f_prime, coupling.f_r
+        useful = uptake.useful(coupling, t_plate=t_plate)
+        t_mean = uptake.mean(coupling, t_plate=t_plate, useful=useful)
+        t_outlet = uptake.outlet(flow=Flow(*flow), useful=useful)
     residual = _imbalance(step.losses, sun=absorbed.plate, useful=useful)
     return SteadyState(
         nodes=nodes,
@@ -341,5 +380,5 @@ def _state(network: Network, around: Surroundings, absorbed: Absorbed, *, nodes:
         f_prime=f_prime,
         f_r=f_r,
         residual=residual,
-        converged=residual < 1e-6,
+        converged=residual < SOLVED,
     )

@@ -31,7 +31,9 @@ GAS_CONSTANT_AIR = 287.055  # J/kgK, dry air
 
 
 class Air(NamedTuple):
-    """Dry air at the temperatures asked for: conductivity [W/mK], viscosity [Pa s], heat capacity [J/kgK], and slopes."""
+    """Dry air in a gap: conductivity [W/mK] and its slope [W/mK2]; Rayleigh number per kelvin and cubic metre [1/Km3] and the
+    slope of its logarithm [1/K].
+    """
 
     conductivity: Floats
     conductivity_slope: Floats
@@ -179,30 +181,34 @@ def elsherbiny_1982(rayleigh: Floats, *, tilt_deg: float, aspect: float) -> tupl
     -----
     **Source**: ElSherbiny, Raithby & Hollands, J. Heat Transfer 104 (1982) 96 (coefficients from memory).
     """
-    ra = np.maximum(rayleigh, 1.0)
+    log_ra = np.log(np.maximum(rayleigh, 1.0))
     share = min(max((tilt_deg - 60.0) / 30.0, 0.0), 1.0)
-    parts = [(1.0 - share, _sixty_degrees(ra, aspect=aspect)), (share, _vertical(ra, aspect=aspect))]
-    nusselt = sum(weight * value for weight, (value, _) in parts)
-    slope = sum(weight * value for weight, (_, value) in parts)
-    return np.asarray(nusselt), np.asarray(slope)
+    return _between(_sixty_degrees(log_ra, aspect=aspect), _vertical(log_ra, aspect=aspect), share=share)
 
 
-def _vertical(ra: Floats, *, aspect: float) -> tuple[Floats, Floats]:
-    z = (6310.0 / ra) ** 1.36
-    y = 0.104 * ra**0.293 / (1.0 + z)
-    laminar = np.cbrt(1.0 + y**3)
-    laminar_slope = y**3 / laminar**2 * (0.293 + 1.36 * z / (1.0 + z))
-    tall, turbulent = 0.242 * (ra / aspect) ** 0.272, 0.0605 * np.cbrt(ra)
+def _between(first: tuple[Floats, Floats], second: tuple[Floats, Floats], *, share: float) -> tuple[Floats, Floats]:
+    """Value and slope a share of the way from the first to the second."""
+    return first[0] + share * (second[0] - first[0]), first[1] + share * (second[1] - first[1])
+
+
+def _vertical(log_ra: Floats, *, aspect: float) -> tuple[Floats, Floats]:
+    """0.104 Ra^0.293 / (1 + (6310/Ra)^1.36) cubed and added to 1, to the 1/3; 0.242 (Ra/A)^0.272; 0.0605 Ra^(1/3): the largest."""
+    z = np.exp(1.36 * (math.log(6310.0) - log_ra))
+    cube = np.exp(3.0 * (math.log(0.104) + 0.293 * log_ra)) / (1.0 + z) ** 3
+    laminar = np.exp(np.log1p(cube) / 3.0)
+    laminar_slope = laminar * cube / (1.0 + cube) * (0.293 + 1.36 * z / (1.0 + z))
+    tall, turbulent = (0.242 * aspect**-0.272) * np.exp(0.272 * log_ra), 0.0605 * np.exp(log_ra / 3.0)
     return _largest((laminar, laminar_slope), (tall, 0.272 * tall), (turbulent, turbulent / 3.0))
 
 
-def _sixty_degrees(ra: Floats, *, aspect: float) -> tuple[Floats, Floats]:
-    z = (ra / 3160.0) ** 20.6
-    g = 0.5 / (1.0 + z) ** 0.1
-    y = 0.0936 * ra**0.314 / (1.0 + g)
-    low = (1.0 + y**7) ** (1.0 / 7.0)
-    low_slope = y**7 / low**6 * (0.314 + 2.06 * z / (1.0 + z) * g / (1.0 + g))
-    high = (0.104 + 0.175 / aspect) * ra**0.283
+def _sixty_degrees(log_ra: Floats, *, aspect: float) -> tuple[Floats, Floats]:
+    """(1 + (0.0936 Ra^0.314 / (1 + G))^7)^(1/7), G = 0.5/(1 + (Ra/3160)^20.6)^0.1; (0.104 + 0.175/A) Ra^0.283: the largest."""
+    z = np.exp(np.minimum(20.6 * (log_ra - math.log(3160.0)), 600.0))
+    g = 0.5 * np.exp(-0.1 * np.log1p(z))
+    seventh = np.exp(7.0 * (math.log(0.0936) + 0.314 * log_ra - np.log1p(g)))
+    low = np.exp(np.log1p(seventh) / 7.0)
+    low_slope = low * seventh / (1.0 + seventh) * (0.314 + 2.06 * z / (1.0 + z) * g / (1.0 + g))
+    high = (0.104 + 0.175 / aspect) * np.exp(0.283 * log_ra)
     return _largest((low, low_slope), (high, 0.283 * high))
 
 
@@ -239,13 +245,18 @@ def gap_nusselt(rayleigh: Floats, *, tilt_deg: float, aspect: float) -> tuple[Fl
     steep = s * s * (3.0 - 2.0 * s)
     if steep == 0.0:
         return hollands_1976(rayleigh, tilt_deg=tilt_deg)
-    nusselt, slope = elsherbiny_1982(rayleigh, tilt_deg=tilt_deg, aspect=aspect)
+    log_ra = np.log(np.maximum(np.abs(rayleigh), 1.0))
+    moving = max(tilt_deg - 60.0, 0.0) / 30.0
+    relation = _sixty_degrees(log_ra, aspect=aspect)
+    if moving > 0.0:
+        upright = _vertical(log_ra, aspect=aspect)
+        relation = _between(relation, upright, share=moving)
     if steep < 1.0:
-        flat, flat_slope = hollands_1976(rayleigh, tilt_deg=tilt_deg)
-        nusselt, slope = flat + steep * (nusselt - flat), flat_slope + steep * (slope - flat_slope)
-    side, side_slope = elsherbiny_1982(-rayleigh, tilt_deg=90.0, aspect=aspect)
-    moving, from_above = max(tilt_deg - 60.0, 0.0) / 30.0, rayleigh <= 0.0
-    return np.where(from_above, 1.0 + moving * (side - 1.0), nusselt), np.where(from_above, moving * side_slope, slope)
+        relation = _between(hollands_1976(rayleigh, tilt_deg=tilt_deg), relation, share=steep)
+    still = np.ones_like(log_ra), np.zeros_like(log_ra)
+    above = _between(still, upright, share=moving) if moving > 0.0 else still
+    below = rayleigh > 0.0
+    return np.where(below, relation[0], above[0]), np.where(below, relation[1], above[1])
 
 
 class Wind(NamedTuple):

@@ -10,12 +10,13 @@ import numpy as np
 from scipy.constants import zero_Celsius
 
 from collector.balance.optics import optics_of
+from collector.balance.steady import SteadyState
 from collector.build.collector import collector_of
 from collector.build.scenario import CHOICES, Scenario
 from collector.study.cautions import cautions_of
 from collector.study.notices import notices_of
 from collector.study.sureness import Alternative, alternatives
-from collector.study.year import HeatYear, heat_years, open_scenario_weather, wind_at_collector
+from collector.study.year import Conditions, HeatYear, heat_years, open_scenario_weather, standing, wind_at_collector
 from weather.year import Floats, WeatherYear
 
 __all__ = ["HOUR_COLUMNS", "Run", "hours_table", "inspected", "runs_of"]
@@ -30,16 +31,16 @@ HOUR_COLUMNS = (
 
 
 class Run(NamedTuple):
-    """One scenario at one temperature: the year solved, and its account in plain numbers."""
+    """One scenario at one temperature: the year solved, every hour with the pump stopped, and the account in plain numbers."""
 
     year: HeatYear
+    still: SteadyState
     account: dict[str, Any]
 
     @property
     def sound(self) -> bool:
         """Whether every hour converged and the sums close."""
-        solved = self.year.hours.converged.all() and self.year.conditions.still.converged.all()
-        return bool(solved) and abs(self.account["unaccounted_kWh_m2"]) < CLOSED
+        return not self.account["unconverged_hours"] and abs(self.account["unaccounted_kWh_m2"]) < CLOSED
 
 
 def runs_of(scenario: Scenario, *, base: Path) -> list[Run]:
@@ -60,7 +61,11 @@ def runs_of(scenario: Scenario, *, base: Path) -> list[Run]:
     weather = open_scenario_weather(scenario, base=base)
     years = heat_years(scenario, weather=weather)
     spreads = alternatives(scenario, weather=weather)
-    return [Run(year, _account(year, scenario, spread)) for year, spread in zip(years, spreads, strict=True)]
+    still = standing(years[0].conditions)
+    return [
+        Run(year, still, _account(year, scenario, still=still, spread=spread))
+        for year, spread in zip(years, spreads, strict=True)
+    ]
 
 
 def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
@@ -101,25 +106,27 @@ def _models(scenario: Scenario) -> dict[str, Any]:
     return names | {"sky_pressure_term": scenario.models.sky_pressure_term}
 
 
-def _account(year: HeatYear, scenario: Scenario, spread: Iterable[Alternative]) -> dict[str, Any]:
-    conditions = year.conditions
+def _account(
+    year: HeatYear, scenario: Scenario, *, still: SteadyState, spread: Iterable[Alternative]
+) -> dict[str, Any]:
+    hours = still.replaced(year.on, year.running)
     return {
         "title": scenario.title,
         "inlet_C" if year.feed.at_inlet else "mean_C": _tidy(year.feed.temperature - zero_Celsius),
         **_sums(year),
         **_sizes(year, scenario),
         "hours_on": int(np.count_nonzero(year.on)),
-        "hottest_plate_C": float(year.hours.t_plate.max()) - zero_Celsius,
-        "stagnation_plate_C": float(conditions.still.t_plate.max()) - zero_Celsius,
-        "hottest_hours": _hottest(year),
-        "residual_max_W_m2": float(max(year.hours.residual.max(), conditions.still.residual.max())),
-        "unconverged_hours": int(np.count_nonzero(~year.hours.converged | ~conditions.still.converged)),
+        "hottest_plate_C": float(hours.t_plate.max()) - zero_Celsius,
+        "stagnation_plate_C": float(still.t_plate.max()) - zero_Celsius,
+        "hottest_hours": _hottest(year.conditions, still),
+        "residual_max_W_m2": float(max(hours.residual.max(), still.residual.max())),
+        "unconverged_hours": int(np.count_nonzero(~hours.converged | ~still.converged)),
         "months": _months(year),
         "how_sure": _how_sure(year, spread),
-        "weather": _weather(conditions.weather, scenario),
+        "weather": _weather(year.conditions.weather, scenario),
         "models": _models(scenario),
-        "notices": notices_of(year, scenario),
-        "cautions": cautions_of(year, scenario),
+        "notices": notices_of(year, scenario, still=still),
+        "cautions": cautions_of(year, scenario, still=still),
     }
 
 
@@ -130,15 +137,15 @@ def _tidy(celsius: float) -> float:
 
 def _sums(year: HeatYear) -> dict[str, float]:
     """kWh/m2 of the year by where it went; the losses are those of the running hours, idle is what standing hours absorb."""
-    on, hours, absorbed = year.on, year.hours, year.conditions.absorbed.plate
+    running, absorbed = year.running, year.conditions.absorbed.plate
     plane, taken = float(year.conditions.plane.total.sum()) / 1e3, float(absorbed.sum()) / 1e3
     paths = {
-        "useful_kWh_m2": hours.useful[on],
-        "top_convection_kWh_m2": hours.losses.convection[on],
-        "top_radiation_kWh_m2": hours.losses.radiation[on],
-        "back_kWh_m2": hours.losses.back[on],
-        "edge_kWh_m2": hours.losses.edge[on],
-        "idle_kWh_m2": absorbed[~on],
+        "useful_kWh_m2": running.useful,
+        "top_convection_kWh_m2": running.losses.convection,
+        "top_radiation_kWh_m2": running.losses.radiation,
+        "back_kWh_m2": running.losses.back,
+        "edge_kWh_m2": running.losses.edge,
+        "idle_kWh_m2": absorbed[~year.on],
     }
     gone = {key: float(values.sum()) / 1e3 for key, values in paths.items()} | {"stored_kWh_m2": 0.0}
     return {
@@ -161,11 +168,12 @@ def _sizes(year: HeatYear, scenario: Scenario) -> dict[str, float]:
 
 
 def _months(year: HeatYear) -> list[dict[str, float]]:
-    month = year.conditions.weather.month
+    month, useful = year.conditions.weather.month, np.zeros(len(year.on))
+    useful[year.on] = year.running.useful
     columns = {
         "plane_kWh_m2": year.conditions.plane.total,
         "absorbed_kWh_m2": year.conditions.absorbed.plate,
-        "useful_kWh_m2": year.hours.useful,
+        "useful_kWh_m2": useful,
         "hours_on": year.on * 1e3,
     }
     sums = {key: np.bincount(month, weights=values, minlength=13) / 1e3 for key, values in columns.items()}
@@ -177,10 +185,9 @@ def _months(year: HeatYear) -> list[dict[str, float]]:
     ]
 
 
-def _hottest(year: HeatYear) -> list[dict[str, Any]]:
+def _hottest(conditions: Conditions, still: SteadyState) -> list[dict[str, Any]]:
     """The hours in which the plate is hottest when the pump stands still."""
-    conditions = year.conditions
-    t_plate, weather = conditions.still.t_plate, conditions.weather
+    t_plate, weather = still.t_plate, conditions.weather
     local = _local(weather)
     return [
         {
@@ -242,12 +249,12 @@ def _weather(weather: WeatherYear, scenario: Scenario) -> dict[str, Any]:
     }
 
 
-def hours_table(year: HeatYear) -> dict[str, Floats | list[str]]:
-    """Every hour of a year in columns.
+def hours_table(run: Run) -> dict[str, Floats | list[str]]:
+    """Every hour of a run in columns.
 
     Parameters
     ----------
-    year
+    run
         Solved.
 
     Returns
@@ -256,17 +263,17 @@ def hours_table(year: HeatYear) -> dict[str, Floats | list[str]]:
         ``HOUR_COLUMNS``, each of the year's length; ``time`` is the middle of the hour in local standard time, ``cover_C`` the
         outermost cover's (the plate's own without a cover), and fluid temperatures of standing hours are the plate's.
     """
-    conditions, hours = year.conditions, year.hours
-    inlet = np.where(year.on, 2.0 * hours.t_mean - hours.t_outlet, hours.t_plate)
+    year, still = run.year, run.still
+    conditions, hours = year.conditions, still.replaced(year.on, year.running)
+    inlet = 2.0 * hours.t_mean - hours.t_outlet
     if year.feed.at_inlet:
         inlet = np.where(year.on, year.feed.temperature, hours.t_plate)
-    celsius = (hours.t_plate, hours.nodes[0], inlet, hours.t_mean, hours.t_outlet, conditions.still.t_plate)
+    temperatures = (hours.t_plate, hours.nodes[0], inlet, hours.t_mean, hours.t_outlet, still.t_plate)
     values = (
         conditions.plane.total, conditions.absorbed.plate, hours.useful, hours.losses.convection, hours.losses.radiation,
         hours.losses.back, hours.losses.edge, year.on.astype(float),
-        *(t - zero_Celsius for t in celsius),
-        conditions.around.t_air - zero_Celsius, conditions.around.t_sky - zero_Celsius, conditions.around.h_wind,
-        hours.residual,
+        *(t - zero_Celsius for t in (*temperatures, conditions.around.t_air, conditions.around.t_sky)),
+        conditions.around.h_wind, hours.residual,
     )  # fmt: skip
     times = [str(time)[:16] for time in _local(conditions.weather)]
     return {"time": times, **dict(zip(HOUR_COLUMNS[1:], values, strict=True))}

@@ -6,6 +6,7 @@ from collections.abc import Iterator
 
 from scipy.constants import zero_Celsius
 
+from collector.balance.steady import SteadyState
 from collector.build.scenario import Scenario
 from collector.physics.fluids import freezing_point
 from collector.study.year import HeatYear
@@ -20,7 +21,7 @@ GLYCOL_AGES = 120.0  # C; common practice, no source
 LAST = "Work on roofs, wind and snow load, pressure and electrics: follow local codes and licensed practice."
 
 
-def cautions_of(year: HeatYear, scenario: Scenario) -> list[str]:
+def cautions_of(year: HeatYear, scenario: Scenario, *, still: SteadyState) -> list[str]:
     """Cautions that this year's temperatures call for.
 
     Parameters
@@ -29,17 +30,18 @@ def cautions_of(year: HeatYear, scenario: Scenario) -> list[str]:
         Solved.
     scenario
         What it was solved for.
+    still
+        Every hour with the pump stopped.
 
     Returns
     -------
     list of str
         At least one.
     """
-    still = year.conditions.still.t_plate
-    running = year.hours.t_outlet[year.on]
+    running = year.running.t_outlet
     return [
-        *at_stagnation(_celsius(still, hottest=True), fluid=scenario.fluid.name),
-        *_when_cold(_celsius(still, hottest=False), scenario),
+        *at_stagnation(_celsius(still.t_plate, hottest=True), fluid=scenario.fluid.name),
+        *_when_cold(_celsius(still.t_plate, hottest=False), scenario),
         *(when_running(_celsius(running, hottest=True)) if running.size else ()),
         LAST,
     ]

@@ -8,6 +8,7 @@ import numpy as np
 from scipy.constants import zero_Celsius
 
 from collector.balance.losses import gap_rayleigh
+from collector.balance.steady import SteadyState
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import valid_range
@@ -22,7 +23,7 @@ LEAST_ASPECT = 12.0  # Hollands et al. 1976
 TRANSITION = (2300.0, 10_000.0)  # Reynolds numbers between laminar and turbulent tube flow
 
 
-def notices_of(year: HeatYear, scenario: Scenario) -> list[str]:
+def notices_of(year: HeatYear, scenario: Scenario, *, still: SteadyState) -> list[str]:
     """Everything that was filled, clipped, mended, out of range or not converged, a sentence each.
 
     Parameters
@@ -31,6 +32,8 @@ def notices_of(year: HeatYear, scenario: Scenario) -> list[str]:
         Solved.
     scenario
         What it was solved for.
+    still
+        Every hour with the pump stopped.
 
     Returns
     -------
@@ -40,7 +43,7 @@ def notices_of(year: HeatYear, scenario: Scenario) -> list[str]:
     return [
         *year.conditions.weather.notices,
         *year.conditions.plane.notices,
-        *_unsolved(year),
+        *_unsolved(year, still),
         *_fluid(year, scenario),
         *_film(year),
         *_wind(year, scenario),
@@ -49,8 +52,8 @@ def notices_of(year: HeatYear, scenario: Scenario) -> list[str]:
     ]
 
 
-def _unsolved(year: HeatYear) -> Iterator[str]:
-    for name, state in (("as operated", year.hours), ("with the pump stopped", year.conditions.still)):
+def _unsolved(year: HeatYear, still: SteadyState) -> Iterator[str]:
+    for name, state in (("running", year.running), ("with the pump stopped", still)):
         open_hours = np.count_nonzero(~state.converged)
         if open_hours:
             yield f"{open_hours} h did not converge {name}: their numbers are not to be trusted"
@@ -59,7 +62,7 @@ def _unsolved(year: HeatYear) -> Iterator[str]:
 def _fluid(year: HeatYear, scenario: Scenario) -> Iterator[str]:
     fluid = scenario.fluid
     low, high = valid_range(fluid.name, mass_fraction=fluid.mass_fraction)
-    t_mean = year.hours.t_mean[year.on]
+    t_mean = year.running.t_mean
     outside = np.count_nonzero((t_mean < low) | (t_mean > high))
     if outside:
         span = f"{low - zero_Celsius:.0f} to {high - zero_Celsius:.0f} C"
@@ -68,7 +71,7 @@ def _fluid(year: HeatYear, scenario: Scenario) -> Iterator[str]:
 
 def _film(year: HeatYear) -> Iterator[str]:
     stream = year.conditions.stream
-    reynolds = np.interp(year.hours.t_mean[year.on], stream.t, stream.reynolds)
+    reynolds = np.interp(year.running.t_mean, stream.t, stream.reynolds)
     between = np.count_nonzero((reynolds > TRANSITION[0]) & (reynolds < TRANSITION[1]))
     if between:
         lowest, highest = reynolds.min(), reynolds.max()
@@ -102,7 +105,7 @@ def _sky(year: HeatYear, scenario: Scenario) -> Iterator[str]:
 
 def _gaps(year: HeatYear) -> Iterator[str]:
     conditions = year.conditions
-    rows: list[Floats] = gap_rayleigh(conditions.network, nodes=year.hours.nodes[:, year.on])
+    rows: list[Floats] = gap_rayleigh(conditions.network, nodes=year.running.nodes)
     for number, (gap, rayleigh) in enumerate(zip(conditions.network.gaps, rows, strict=True), start=1):
         above = np.count_nonzero(rayleigh > HIGHEST_RAYLEIGH)
         if above:

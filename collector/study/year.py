@@ -22,7 +22,7 @@ from weather.stations import open_weather
 from weather.sun import Sun, sun_position
 from weather.year import Floats, Mask, WeatherYear
 
-__all__ = ["Conditions", "HeatYear", "heat_years", "open_scenario_weather", "wind_at_collector", "wind_coefficient"]
+__all__ = ["Conditions", "HeatYear", "heat_years", "open_scenario_weather", "standing", "wind_at_collector", "wind_coefficient"]
 
 WIND_PROFILE = 1.0 / 7.0  # exponent of the wind's rise with height over open country; common practice, no source
 
@@ -37,8 +37,6 @@ class Conditions:
         What the hours bring.
     collector, network, stream
         What is solved.
-    still
-        All hours with the pump stopped.
     """
 
     weather: WeatherYear
@@ -48,7 +46,6 @@ class Conditions:
     collector: Collector
     network: Network
     stream: Stream
-    still: SteadyState
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -61,19 +58,19 @@ class HeatYear:
         What the year was solved for.
     feed
         The fluid temperature held.
-    hours, on
-        All hours as operated, and which of them run.
+    running, on
+        The hours that run, and which of the year's n they are.
     """
 
     conditions: Conditions
     feed: Feed
-    hours: SteadyState
+    running: SteadyState
     on: Mask
 
     @property
     def useful_kWh_m2(self) -> float:  # noqa: N802 # the unit's symbol
         """The year's heat per area of length x width."""
-        return float(self.hours.useful.sum() / 1e3)
+        return float(self.running.useful.sum() / 1e3)
 
 
 def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = None) -> list[HeatYear]:
@@ -99,7 +96,6 @@ def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = No
     absorbed = absorbed_power(optics_of(collector), plane)
     around = _surroundings(scenario, weather=weather, sun=sun)
     network, stream = network_of(collector, pressure=weather.pressure), stream_of(collector)
-    still = solve_stagnation(network, around, absorbed)
     conditions = Conditions(
         weather=weather,
         plane=plane,
@@ -108,17 +104,30 @@ def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = No
         collector=collector,
         network=network,
         stream=stream,
-        still=still,
     )
     return [_at(conditions, feed) for feed in _feeds(scenario)]
 
 
 def _at(conditions: Conditions, feed: Feed) -> HeatYear:
     uptake = Uptake(collector=conditions.collector, stream=conditions.stream, feed=feed)
-    hours, on = operate(
-        conditions.network, conditions.around, conditions.absorbed, uptake=uptake, still=conditions.still
-    )
-    return HeatYear(conditions=conditions, feed=feed, hours=hours, on=on)
+    running, on = operate(conditions.network, conditions.around, conditions.absorbed, uptake=uptake)
+    return HeatYear(conditions=conditions, feed=feed, running=running, on=on)
+
+
+def standing(conditions: Conditions) -> SteadyState:
+    """Every hour with the pump stopped.
+
+    Parameters
+    ----------
+    conditions
+        Of a year.
+
+    Returns
+    -------
+    SteadyState
+        All n hours.
+    """
+    return solve_stagnation(conditions.network, conditions.around, conditions.absorbed)
 
 
 def _feeds(scenario: Scenario) -> Iterator[Feed]:
