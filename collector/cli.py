@@ -49,7 +49,11 @@ def main() -> None:
 Decorator = Callable[[Callable[..., None]], Callable[..., None]]
 _json: Decorator = click.option("--json", "as_json", is_flag=True, help="One JSON object instead of text.")
 _set: Decorator = click.option(
-    "--set", "overrides", multiple=True, metavar="KEY=VALUE", help="Override a scenario key, such as fluid.flow_kg_s_m2=0.01."
+    "--set",
+    "overrides",
+    multiple=True,
+    metavar="KEY=VALUE",
+    help="Override a scenario key, such as fluid.flow_kg_s_m2=0.01.",
 )
 _scenario: Decorator = click.argument("scenario", type=click.Path(path_type=Path))
 
@@ -88,7 +92,9 @@ def year(scenarios: tuple[Path, ...], overrides: tuple[str, ...], out: Path | No
     content = {"runs": accounts}
     if out is not None:
         _write(runs, content, out=out)
-    _emit(content, text=lambda: year_text(accounts[0]) if len(runs) == 1 else comparison_text(accounts), as_json=as_json)
+    _emit(
+        content, text=lambda: year_text(accounts[0]) if len(runs) == 1 else comparison_text(accounts), as_json=as_json
+    )
     if not all(run.sound for run in runs):
         click.echo("noonplate: hours without convergence, or sums that do not close: see the result", err=True)
         sys.exit(NOT_SOUND)
@@ -104,7 +110,10 @@ def _write(runs: list[Run], content: dict[str, Any], *, out: Path) -> None:
     hours = (
         (number, *row)
         for number, run in enumerate(runs, start=1)
-        for row in zip(*(column if isinstance(column, list) else column.tolist() for column in hours_table(run).values()), strict=True)
+        for row in zip(
+            *(column if isinstance(column, list) else column.tolist() for column in hours_table(run).values()),
+            strict=True,
+        )
     )
     texts = {
         "summary.json": json_text(content),
@@ -167,12 +176,24 @@ def new(file: Path, as_json: bool) -> None:  # noqa: FBT001
     from weather.errors import InputError, Problem
 
     if file.exists():
-        raise InputError(Problem(where=str(file), what="there is a file of this name already", do="choose another name; nothing was changed"))
+        raise InputError(
+            Problem(
+                where=str(file),
+                what="there is a file of this name already",
+                do="choose another name; nothing was changed",
+            )
+        )
     if not file.parent.is_dir():
-        raise InputError(Problem(where=str(file), what="no such folder", got=str(file.parent), do="make the folder first"))
+        raise InputError(
+            Problem(where=str(file), what="no such folder", got=str(file.parent), do="make the folder first")
+        )
     starter = (files("collector.build") / "data" / "starter.toml").read_text(encoding="utf-8")
-    write_whole(file, write=lambda path: path.write_text(starter, encoding="utf-8") and None)
-    _emit({"written": str(file)}, text=lambda: f"written: {file}\nnext: noonplate check {file}; noonplate year {file}\n", as_json=as_json)
+    write_whole(file, write=lambda path: path.write_text(starter, encoding="utf-8"))
+    _emit(
+        {"written": str(file)},
+        text=lambda: f"written: {file}\nnext: noonplate check {file}; noonplate year {file}\n",
+        as_json=as_json,
+    )
 
 
 @main.command()

@@ -23,7 +23,8 @@ def product_collector(build: dict, condition: dict) -> Collector:
     share = 2.0 * (build["length"] + build["width"]) * edge["height"] / (build["length"] * build["width"])
     return Collector(
         covers=tuple(
-            Cover(refractive_index=c["n"], absorption=c["kl"], emittance=c["emittance"], gap=c["gap"]) for c in build["covers"]
+            Cover(refractive_index=c["n"], absorption=c["kl"], emittance=c["emittance"], gap=c["gap"])
+            for c in build["covers"]
         ),
         absorber=Absorber(
             absorptance=build["absorptance"],

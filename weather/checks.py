@@ -81,7 +81,9 @@ def clean_column(name: str, *, values: Floats, file: str, stamps: pd.DatetimeInd
     if missing.any():
         hours = np.arange(len(values))
         whole[missing] = np.interp(hours[missing], hours[~missing], whole[~missing])
-        said.append(f"{name}: {np.count_nonzero(missing)} h missing, filled in a straight line (gaps up to {LONGEST_GAP} h)")
+        said.append(
+            f"{name}: {np.count_nonzero(missing)} h missing, filled in a straight line (gaps up to {LONGEST_GAP} h)"
+        )
     negative = whole < 0.0
     if name in {"ghi", "dni", "dhi"} and negative.any():
         said.append(f"{name}: {np.count_nonzero(negative)} h slightly negative set to 0")
@@ -98,7 +100,9 @@ def _refuse_long_gap(name: str, *, missing: Mask, file: str, stamps: pd.Datetime
         raise InputError(
             Problem(
                 where=f"{file}, {str(stamps[start])[:16]}",
-                what=f"{name} is missing for {length} h in a row" if length < len(missing) else f"{name} is missing throughout",
+                what=f"{name} is missing for {length} h in a row"
+                if length < len(missing)
+                else f"{name} is missing throughout",
                 got=f"{np.count_nonzero(missing)} h missing in {len(starts)} gaps",
                 allowed=f"gaps up to {LONGEST_GAP} h, which are filled in a straight line and counted",
                 do="mend the file or use another",
@@ -138,11 +142,17 @@ def site_problems(site: Site, *, file: str) -> list[Problem]:
     if not found and apart > 4.0:
         got = f"longitude {site.longitude_deg:g}, UTC offset {site.utc_offset_h:g} h"
         allowed = "an offset within 4 h of longitude/15"
-        found.append(Problem(where=file, what="header: clock and longitude do not belong together", got=got, allowed=allowed, do=do))
+        found.append(
+            Problem(
+                where=file, what="header: clock and longitude do not belong together", got=got, allowed=allowed, do=do
+            )
+        )
     return found
 
 
-def find_stamp(sun: Sun, *, latitude_deg: float, ghi: Floats, dni: Floats, dhi: Floats, rule_min: float) -> tuple[Stamp, str]:
+def find_stamp(
+    sun: Sun, *, latitude_deg: float, ghi: Floats, dni: Floats, dhi: Floats, rule_min: float
+) -> tuple[Stamp, str]:
     """Time-stamp convention of a file, by closure of GHI against DHI + DNI cos z.
 
     Parameters
@@ -166,7 +176,10 @@ def find_stamp(sun: Sun, *, latitude_deg: float, ghi: Floats, dni: Floats, dhi: 
     beam = dni > 50.0
     if np.count_nonzero(beam) < ENOUGH_BEAM:
         stamp = Stamp(rule_min=rule_min, found_min=None, used_min=rule_min, rmse_w_m2=None, rmse_unshifted_w_m2=None)
-        return stamp, f"too little beam ({np.count_nonzero(beam)} h) to find the time-stamp convention: the format's rule is used"
+        return (
+            stamp,
+            f"too little beam ({np.count_nonzero(beam)} h) to find the time-stamp convention: the format's rule is used",
+        )
     rmse = _closure(sun, latitude_deg=latitude_deg, lit=beam, ghi=ghi, dni=dni, dhi=dhi)
     best = int(np.clip(np.argmin(rmse), 1, len(rmse) - 2))
     before, here, after = rmse[best - 1 : best + 2] ** 2

@@ -22,7 +22,10 @@ from weather.year import Floats, Site, WeatherYear
 
 __all__ = ["read"]
 
-PLAIN_YEAR, LEAP_YEAR = 2006, 2004  # calendar for rows that come from several years: the middle of the leap cycle, or a leap year
+PLAIN_YEAR, LEAP_YEAR = (
+    2006,
+    2004,
+)  # calendar for rows that come from several years: the middle of the leap cycle, or a leap year
 REQUIRED = ("ghi", "dni", "dhi", "t_air", "wind")
 OPTIONAL = ("t_dew", "cloud", "longwave", "albedo")
 
@@ -67,12 +70,16 @@ def read(path: Path, *, place: Mapping[str, float] | None = None) -> WeatherYear
         raise
     except Exception as fault:  # noqa: BLE001 # whatever a reader trips over, the user gets a message and never a traceback
         do = "open it in an editor: a header or a row is damaged or cut off"
-        raise InputError(Problem(where=str(path), what=f"looks like {name} but can't be read as such", got=_first_line(fault), do=do)) from None
+        raise InputError(
+            Problem(where=str(path), what=f"looks like {name} but can't be read as such", got=_first_line(fault), do=do)
+        ) from None
     if place:
-        raw = replace(raw, site=replace(raw.site, **place))
+        raw = replace(raw, site=replace(raw.site, **place))  # type: ignore[arg-type] # never the name
     if faults := site_problems(raw.site, file=str(path)):
         raise InputError(faults)
-    return _checked(raw, file=str(path), said=[f"{key} as given under [place], not as in the file" for key in place or ()])
+    return _checked(
+        raw, file=str(path), said=[f"{key} as given under [place], not as in the file" for key in place or ()]
+    )
 
 
 def _text(path: Path) -> str:
@@ -80,7 +87,9 @@ def _text(path: Path) -> str:
         data = path.read_bytes()
     except OSError as fault:
         do = "check the path (it counts from the scenario file), or name a bundled station"
-        raise InputError(Problem(where=str(path), what=f"weather file cannot be read: {fault.strerror}", do=do)) from None
+        raise InputError(
+            Problem(where=str(path), what=f"weather file cannot be read: {fault.strerror}", do=do)
+        ) from None
     if b"\0" in data[:4096] or not data.strip():
         what = "weather file is empty" if not data.strip() else "weather file is binary, not text"
         raise InputError(Problem(where=str(path), what=what, allowed="a TMY3, TMY2 or EPW text file"))
@@ -101,7 +110,9 @@ def _recognise(text: str, *, file: str) -> tuple[str, Callable[[str, Path], Raw]
     if len(second) >= 140 and second[1:9].replace(" ", "0").isdigit() and "," not in second:
         return "TMY2", _tmy2
     raise InputError(
-        Problem(where=f"{file}:1", what="weather file of unknown format", got=repr(first[:60]), allowed="TMY3, TMY2 or EPW")
+        Problem(
+            where=f"{file}:1", what="weather file of unknown format", got=repr(first[:60]), allowed="TMY3, TMY2 or EPW"
+        )
     )
 
 
@@ -130,7 +141,14 @@ def _tmy3(text: str, path: Path) -> Raw:
         "pressure": _numbers(frame, "pressure") * 100.0,
     }
     place = _site(f"{str(meta['Name']).strip()} {meta.get('State', '')}".strip(), meta)
-    return Raw(format="TMY3", rule_min=-30.0, site=place, index=_naive(frame.index), columns=columns, years=tuple(sorted(years)))
+    return Raw(
+        format="TMY3",
+        rule_min=-30.0,
+        site=place,
+        index=_naive(frame.index),
+        columns=columns,
+        years=tuple(sorted(years)),
+    )
 
 
 def _tmy2(text: str, path: Path) -> Raw:
@@ -148,14 +166,18 @@ def _tmy2(text: str, path: Path) -> Raw:
     }
     name = f"{str(meta.get('City', '')).strip().title()} {str(meta.get('State', '')).strip()}".strip()
     years = tuple(sorted({1900 + int(year) % 100 for year in frame["year"]}))
-    return Raw(format="TMY2", rule_min=30.0, site=_site(name, meta), index=_naive(frame.index), columns=columns, years=years)
+    return Raw(
+        format="TMY2", rule_min=30.0, site=_site(name, meta), index=_naive(frame.index), columns=columns, years=years
+    )
 
 
 def _epw(text: str, path: Path) -> Raw:
     head = next(csv.reader([text.partition("\n")[0]]))
     if len(head) != 10:
         what = "EPW header LOCATION needs ten fields; a comma in the place's name shifts the others"
-        raise InputError(Problem(where=f"{path}:1", what=what, got=f"{len(head)} fields: {','.join(head)}", do="mend the first line"))
+        raise InputError(
+            Problem(where=f"{path}:1", what=what, got=f"{len(head)} fields: {','.join(head)}", do="mend the first line")
+        )
     head = [field.replace(",", " ") for field in head]
     frame, meta = iotools.read_epw(io.StringIO(",".join(head) + "\n" + text.partition("\n")[2]))
     columns = {
@@ -172,7 +194,9 @@ def _epw(text: str, path: Path) -> Raw:
     }
     index = _naive(frame.index)
     years = tuple(sorted({int(year) for year in index.year}))
-    return Raw(format="EPW", rule_min=30.0, site=_site(str(meta["city"]), meta), index=index, columns=columns, years=years)
+    return Raw(
+        format="EPW", rule_min=30.0, site=_site(str(meta["city"]), meta), index=index, columns=columns, years=years
+    )
 
 
 def _site(name: str, meta: Mapping[str, Any]) -> Site:
@@ -209,7 +233,7 @@ def _positive(values: Floats) -> Floats:
 
 
 def _checked(raw: Raw, *, file: str, said: list[str]) -> WeatherYear:
-    index, order, notices = _calendar(raw.index, file=file)
+    index, order, notices = _calendar(raw.index, at_end=raw.rule_min < 0.0, file=file)
     said += notices
     if len(raw.years) > 1:
         span = f"{raw.years[0]}-{raw.years[-1]}"
@@ -250,9 +274,10 @@ def _instants(index: pd.DatetimeIndex, *, shift_min: float) -> np.ndarray[Any, n
     return (index + pd.Timedelta(seconds=round(60.0 * shift_min))).to_numpy().astype("datetime64[s]")
 
 
-def _calendar(index: pd.DatetimeIndex, *, file: str) -> tuple[pd.DatetimeIndex, np.ndarray[Any, Any], list[str]]:
+def _calendar(
+    index: pd.DatetimeIndex, *, at_end: bool, file: str
+) -> tuple[pd.DatetimeIndex, np.ndarray[Any, Any], list[str]]:
     """One hourly axis in the file's own stamps, and the place of each row on it."""
-    at_end = index[0].hour == 1  # stamps at the end of the hour: the first row of the year is 01:00
     lag = pd.Timedelta(hours=1 if at_end else 0)
     start = index - lag
     leap_day = bool(((start.month == 2) & (start.day == 29)).any())
@@ -261,7 +286,7 @@ def _calendar(index: pd.DatetimeIndex, *, file: str) -> tuple[pd.DatetimeIndex, 
     axis = pd.date_range(f"{year}-01-01", f"{year}-12-31 23:00", freq="h")
     if not leap_day:
         axis = axis[~((axis.month == 2) & (axis.day == 29))]
-    parts = {"year": np.full(len(start), year), "month": start.month, "day": start.day, "hour": start.hour}
+    parts = pd.DataFrame({"year": year, "month": start.month, "day": start.day, "hour": start.hour})
     place = axis.get_indexer(pd.DatetimeIndex(pd.to_datetime(parts)))
     return axis + lag, place, _axis_faults(place, size=len(axis), file=file, index=index)
 
@@ -271,12 +296,20 @@ def _axis_faults(place: np.ndarray[Any, Any], *, size: int, file: str, index: pd
     unique, counts = np.unique(place, return_counts=True)
     if (counts > 1).any():
         row = int(np.flatnonzero(place == unique[counts > 1][0])[1])
-        what, got = "an hour of the year stands twice", f"{np.count_nonzero(counts > 1)} such hours, first at {index[row]}"
+        what, got = (
+            "an hour of the year stands twice",
+            f"{np.count_nonzero(counts > 1)} such hours, first at {index[row]}",
+        )
         raise InputError(Problem(where=f"{file}, data row {row + 1}", what=what, got=got, allowed="one row an hour"))
     absent = size - len(unique)
     if absent > size // 100:
         raise InputError(
-            Problem(where=file, what="not a whole year", got=f"{len(place)} hourly rows, {absent} of {size} hours absent", allowed=f"{size}")
+            Problem(
+                where=file,
+                what="not a whole year",
+                got=f"{len(place)} hourly rows, {absent} of {size} hours absent",
+                allowed=f"{size}",
+            )
         )
     said = [f"{absent} rows are absent"] if absent else []
     if (np.diff(place) < 0).any():
@@ -290,14 +323,18 @@ def _on_axis(values: Floats, *, order: np.ndarray[Any, Any], size: int) -> Float
     return placed
 
 
-def _if_complete(name: str, values: Floats | None, *, file: str, stamps: pd.DatetimeIndex) -> tuple[Floats | None, list[str]]:
+def _if_complete(
+    name: str, values: Floats | None, *, file: str, stamps: pd.DatetimeIndex
+) -> tuple[Floats | None, list[str]]:
     """Column made whole, or None where too much of it is missing."""
     if values is None or not np.isfinite(values).any():
         return None, []
     try:
         column = clean_column(name, values=values, file=file, stamps=stamps)
     except InputError:
-        return None, [f"{name}: {np.count_nonzero(~np.isfinite(values))} h missing or impossible, too many to fill: the column is not used"]
+        return None, [
+            f"{name}: {np.count_nonzero(~np.isfinite(values))} h missing or impossible, too many to fill: the column is not used"
+        ]
     return column.values, list(column.notices)
 
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from weather.sun import Sun
-from weather.year import Floats, WeatherYear
+from weather.year import Floats, Mask, WeatherYear
 
 __all__ = ["MODELS", "PlaneIrradiance", "on_plane"]
 
@@ -120,26 +120,24 @@ def _diffuse(
         "return_components": True,
     }
     if model == "hay-davies":
-        parts = irradiance.haydavies(**angles)
-        names = ("poa_isotropic", "poa_circumsolar")
+        parts = irradiance.haydavies(**angles) | {"poa_horizon": none}
     else:
         from pvlib.atmosphere import get_relative_airmass
 
         airmass = get_relative_airmass(sun.apparent_zenith_deg)
         relation = irradiance.perez if model == "perez" else irradiance.perez_driesse
         parts = relation(**angles, airmass=airmass)
-        names = ("poa_isotropic", "poa_circumsolar", "poa_horizon")
-    found = [np.asarray(parts[name], dtype=float) for name in names]
+    found = [np.asarray(parts[f"poa_{name}"], dtype=float) for name in ("isotropic", "circumsolar", "horizon")]
     open_hours = ~np.isfinite(sum(found))
     lit = open_hours & (weather.dhi > 0.0)
     values = [np.where(open_hours, 0.0, part) for part in found]
     values[0] = np.where(lit, plain, values[0])
     above = sun.apparent_zenith_deg < 90.0
-    return values[0], values[1], values[2] if len(values) == 3 else none, int(np.count_nonzero(lit & above))
+    return values[0], values[1], values[2], int(np.count_nonzero(lit & above))
 
 
-def _notices(weather: WeatherYear, *, up: Floats, sky: Floats, mended: int, model: str) -> tuple[str, ...]:
-    dark = (weather.ghi > 0.0) & ~up.astype(bool)
+def _notices(weather: WeatherYear, *, up: Mask, sky: Floats, mended: int, model: str) -> tuple[str, ...]:
+    dark = (weather.ghi > 0.0) & ~up
     energy, share = weather.ghi[dark].sum() / 1e3, weather.ghi[dark].sum() / max(weather.ghi.sum(), 1e-9)
     negative = int(np.count_nonzero(sky < -0.5))
     said = []

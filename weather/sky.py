@@ -30,7 +30,12 @@ MODELS = {
     "measured": "the weather file's own long-wave column",
     "ambient": "sky as warm as the air: a bound, not a relation",
 }
-NEEDS = {"berdahl-martin": ("t_dew",), "martin-berdahl": ("t_dew", "cloud"), "brunt": ("t_dew",), "measured": ("longwave",)}
+NEEDS = {
+    "berdahl-martin": ("t_dew",),
+    "martin-berdahl": ("t_dew", "cloud"),
+    "brunt": ("t_dew",),
+    "measured": ("longwave",),
+}
 COLUMNS = {"t_dew": "dew point", "cloud": "cloud cover", "longwave": "long-wave irradiance"}
 DEW_POINT_RANGE = (260.15, 297.15)  # K, of the fits to dew point; from memory
 CLOUD_BASE = 2000.0  # m, assumed for opaque cloud
@@ -105,7 +110,9 @@ def _emissivity(weather: WeatherYear, solar_hour: Floats, model: str, *, pressur
     return clear if model == "berdahl-martin" else martin_berdahl_emissivity(clear=clear, cloud=_column(weather.cloud))
 
 
-def berdahl_martin_emissivity(*, t_dew: Floats, solar_hour: Floats | None = None, pressure: float | None = None) -> Floats:
+def berdahl_martin_emissivity(
+    *, t_dew: Floats, solar_hour: Floats | None = None, pressure: float | None = None
+) -> Floats:
     """Emissivity of a clear sky.
 
     Parameters
@@ -157,7 +164,7 @@ def martin_berdahl_emissivity(*, clear: Floats, cloud: Floats, base: float = CLO
     -----
     **Source**: Martin & Berdahl, Solar Energy 33 (1984) 321; cloud emissivity 1.
     """
-    return clear + (1.0 - clear) * cloud * np.exp(-base / CLOUD_SCALE)
+    return np.asarray(clear + (1.0 - clear) * cloud * np.exp(-base / CLOUD_SCALE))
 
 
 def brunt_emissivity(*, vapour_pressure: Floats) -> Floats:

@@ -77,7 +77,9 @@ def sun_at(time: NDArray[np.datetime64], *, site: Site, pressure: float | None =
     **Source**: Reda & Andreas, NREL/TP-560-34302 (2004), through pvlib; Spencer (1971) for the distance, solar constant
     1361 W/m2.
     """
-    return _sun(time.astype("datetime64[s]").tobytes(), site, pressure=pressure or _standard(site), t_air_degC=t_air_degC)
+    return _sun(
+        time.astype("datetime64[s]").tobytes(), site, pressure=pressure or _standard(site), t_air_degC=t_air_degC
+    )
 
 
 @lru_cache(maxsize=4)
@@ -106,7 +108,9 @@ def _sun(instants: bytes, site: Site, *, pressure: float, t_air_degC: float) -> 
         azimuth_deg=found["azimuth"].to_numpy(),
         hour_angle_deg=np.degrees(np.arctan2(west, noon)),
         declination_deg=np.degrees(np.arcsin(np.clip(sine, -1.0, 1.0))),
-        dni_extra=np.asarray(irradiance.get_extra_radiation(index.day_of_year.to_numpy(), solar_constant=1361.0, method="spencer")),
+        dni_extra=np.asarray(
+            irradiance.get_extra_radiation(index.day_of_year.to_numpy(), solar_constant=1361.0, method="spencer")
+        ),
     )
 
 

@@ -9,10 +9,10 @@ import numpy as np
 
 from collector.build.collector import Collector
 from collector.physics.convection import air, gap_nusselt
-from collector.physics.radiation import parallel_plates_factor, radiative_flux, sky_view_factor
+from collector.physics.radiation import SIGMA, parallel_plates_factor, radiative_flux, sky_view_factor
 from weather.year import Floats, Mask
 
-__all__ = ["Gap", "Losses", "Network", "Step", "Surroundings", "gap_rayleigh", "network_of", "newton_step"]
+__all__ = ["Facing", "Gap", "Losses", "Network", "Step", "Surroundings", "gap_rayleigh", "network_of", "newton_step"]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -27,6 +27,19 @@ class Surroundings:
     def at(self, hours: Mask | slice) -> Surroundings:
         """Return the same for some of the hours."""
         return Surroundings(**{name: column[hours] for name, column in vars(self).items()})
+
+
+@dataclass(frozen=True, kw_only=True)
+class Facing:
+    """What the front faces, each ``(n,)``: air [K], wind coefficient [W/m2K], fourth power of the radiant temperature [K4]."""
+
+    t_air: Floats
+    h_wind: Floats
+    radiant: Floats
+
+    def at(self, hours: Mask) -> Facing:
+        """Return the same for some of the hours."""
+        return Facing(t_air=self.t_air[hours], h_wind=self.h_wind[hours], radiant=self.radiant[hours])
 
 
 class Gap(NamedTuple):
@@ -64,6 +77,11 @@ class Network:
     pressure: float
     u_back: float
     u_edge: float
+
+    def facing(self, around: Surroundings) -> Facing:
+        """Return what the front faces: sky and ground become one radiant temperature by their shares of the view."""
+        sky, ground = around.t_sky**4, around.t_ground**4
+        return Facing(t_air=around.t_air, h_wind=around.h_wind, radiant=ground + self.sky_share * (sky - ground))
 
 
 class Losses(NamedTuple):
@@ -139,13 +157,13 @@ def network_of(collector: Collector, *, pressure: float) -> Network:
     )
 
 
-def newton_step(network: Network, around: Surroundings, *, sun_on_covers: Floats, nodes: Floats) -> Step:
+def newton_step(network: Network, facing: Facing, *, sun_on_covers: Floats, nodes: Floats) -> Step:
     """Linearise the losses at a state and eliminate the covers, from the outside in.
 
     Parameters
     ----------
-    network, around
-        The collector and what it faces, n hours.
+    network, facing
+        The collector and what its front faces, n hours.
     sun_on_covers
         Sunlight absorbed in each cover, ``(covers, n)`` [W/m2].
     nodes
@@ -156,7 +174,7 @@ def newton_step(network: Network, around: Surroundings, *, sun_on_covers: Floats
     Step
         The plate's loss with its true slope, and how the covers follow.
     """
-    convection, radiation, slope = _outside(network, around, nodes[0])
+    convection, radiation, slope = _outside(network, facing, nodes[0])
     leaving = relaxed = convection + radiation
     residuals, shifts, follows = [], [], []
     for gap, sun, upper, lower in zip(network.gaps, sun_on_covers, nodes[:-1], nodes[1:], strict=True):
@@ -169,23 +187,23 @@ def newton_step(network: Network, around: Surroundings, *, sun_on_covers: Floats
         leaving = arriving
         shifts.append(shift)
         follows.append(follow)
-    above_air = nodes[-1] - around.t_air
+    above_air = nodes[-1] - facing.t_air
     back, edge = network.u_back * above_air, network.u_edge * above_air
     losses = Losses(convection, radiation, back, edge, np.array(residuals).reshape(len(residuals), above_air.size))
     return Step(losses, relaxed + back + edge, slope, slope + (network.u_back + network.u_edge), shifts, follows)
 
 
-def _outside(network: Network, around: Surroundings, t_front: Floats) -> tuple[Floats, Floats, Floats]:
+def _outside(network: Network, facing: Facing, t_front: Floats) -> tuple[Floats, Floats, Floats]:
     """Convection and radiation from the outermost face, and the slope of both together."""
-    share = network.sky_share
-    radiation, slope, _ = radiative_flux(t_front, around.t_sky, factor=network.eps_front * share)
-    if share < 1.0:
-        to_ground, ground_slope, _ = radiative_flux(t_front, around.t_ground, factor=network.eps_front * (1.0 - share))
-        radiation, slope = radiation + to_ground, slope + ground_slope
-    return around.h_wind * (t_front - around.t_air), radiation, slope + around.h_wind
+    strength = network.eps_front * SIGMA
+    cube = t_front * t_front * t_front
+    radiation = strength * (cube * t_front - facing.radiant)
+    return facing.h_wind * (t_front - facing.t_air), radiation, (4.0 * strength) * cube + facing.h_wind
 
 
-def _through_gap(network: Network, gap: Gap, *, t_upper: Floats, t_lower: Floats) -> tuple[Floats, Floats, Floats, Floats]:
+def _through_gap(
+    network: Network, gap: Gap, *, t_upper: Floats, t_lower: Floats
+) -> tuple[Floats, Floats, Floats, Floats]:
     """Convection and radiation upward through a gap, and the slopes of both together to either face."""
     gas = air(0.5 * (t_upper + t_lower), pressure=network.pressure)
     difference = t_lower - t_upper
@@ -194,7 +212,9 @@ def _through_gap(network: Network, gap: Gap, *, t_upper: Floats, t_lower: Floats
     film = gas.conductivity / gap.thickness
     convection = nusselt * film * difference
     by_difference = film * (nusselt + climb)
-    by_mean = 0.5 * difference * (nusselt * (gas.conductivity_slope / gap.thickness) + film * climb * gas.rayleigh_log_slope)
+    by_mean = (
+        0.5 * difference * (nusselt * (gas.conductivity_slope / gap.thickness) + film * climb * gas.rayleigh_log_slope)
+    )
     radiation, by_lower, by_upper = radiative_flux(t_lower, t_upper, factor=gap.exchange)
     return convection, radiation, by_upper - by_difference + by_mean, by_lower + by_difference + by_mean
 

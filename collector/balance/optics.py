@@ -9,7 +9,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from collector.build.collector import Collector
-from collector.physics.glazing import Stack, brandemuehl_beckman_1980, flat_black_absorptance, fresnel_slab, stack_of_slabs
+from collector.physics.glazing import (
+    Stack,
+    brandemuehl_beckman_1980,
+    flat_black_absorptance,
+    fresnel_slab,
+    stack_of_slabs,
+)
 from weather.plane import PlaneIrradiance
 from weather.year import Floats, Mask
 
@@ -64,7 +70,11 @@ def absorbed_power(optics: Optics, plane: PlaneIrradiance) -> Absorbed:
         Plate and covers [W/m2].
     """
     lit = np.flatnonzero(plane.beam > 0.0)
-    power = np.outer(optics.sky, plane.sky) + np.outer(optics.horizon, plane.horizon) + np.outer(optics.ground, plane.ground)
+    power = (
+        np.outer(optics.sky, plane.sky)
+        + np.outer(optics.horizon, plane.horizon)
+        + np.outer(optics.ground, plane.ground)
+    )
     power[:, lit] += optics.beam(plane.incidence_deg[lit]) * plane.beam[lit]
     return Absorbed(plate=power[0], covers=power[1:])
 
@@ -95,7 +105,10 @@ def optics_of(collector: Collector) -> Optics:
 
 
 def _stack(collector: Collector, incidence_deg: Floats) -> Stack:
-    slabs = [fresnel_slab(incidence_deg, refractive_index=c.refractive_index, absorption=c.absorption) for c in collector.covers]
+    slabs = [
+        fresnel_slab(incidence_deg, refractive_index=c.refractive_index, absorption=c.absorption)
+        for c in collector.covers
+    ]
     if slabs:
         return stack_of_slabs(slabs)
     ones, none = np.ones_like(incidence_deg), np.zeros((0, incidence_deg.size))
@@ -119,7 +132,7 @@ def _beneath(collector: Collector) -> Floats:
     else:
         alpha, reflected, *absorbed = from_below(np.array([EFFECTIVE_ANGLE_BENEATH]))[:, 0]
     echoes = 1.0 / (1.0 - (1.0 - alpha) * reflected)
-    return np.array([reflected * alpha, *absorbed]) * echoes
+    return np.array([reflected * alpha, *absorbed]) * float(echoes)
 
 
 def _shares(collector: Collector, incidence_deg: Floats, *, beneath: Floats) -> Floats:
@@ -140,7 +153,9 @@ def _integrated(shares: Callable[[Floats], Floats], *, tilt_deg: float) -> tuple
     theta, weight = _hemisphere()
     tilt = math.radians(tilt_deg)
     with np.errstate(divide="ignore"):
-        crossing = np.clip(-math.cos(tilt) * np.cos(theta) / (math.sin(tilt) * np.sin(theta)), -1.0, 1.0) if tilt else -1.0
+        crossing = (
+            np.clip(-math.cos(tilt) * np.cos(theta) / (math.sin(tilt) * np.sin(theta)), -1.0, 1.0) if tilt else -1.0
+        )
     sky_part = np.arccos(crossing) / math.pi * np.ones_like(theta)
     values = shares(np.degrees(theta))
     around = (np.arange(256) + 0.5) / 256.0 * (math.pi / 2.0)
@@ -158,7 +173,7 @@ def _whole_hemisphere(function: Callable[[Floats], Floats]) -> Floats:
 
 
 def _hemisphere() -> tuple[Floats, Floats]:
-    theta = (np.arange(512) + 0.5) / 512.0 * (math.pi / 2.0)
+    theta = (np.arange(512, dtype=float) + 0.5) / 512.0 * (math.pi / 2.0)
     return theta, np.sin(theta) * np.cos(theta)
 
 

@@ -5,16 +5,18 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from collector.balance.losses import Losses, Network, Step, Surroundings, newton_step
 from collector.balance.optics import Absorbed
 from collector.build.collector import Collector
 from collector.physics.convection import tube_nusselt
 from collector.physics.fin import capacity_ratio_factor, efficiency_factor, fin_efficiency, plate_to_fluid_resistance
-from collector.physics.fluids import liquid, valid_range
+from collector.physics.fluids import Liquid, liquid, valid_range
 from weather.year import Floats, Mask
 
 __all__ = ["Feed", "SteadyState", "Stream", "Uptake", "operate", "solve_running", "solve_stagnation", "stream_of"]
@@ -23,7 +25,7 @@ TOLERANCE = 1e-8  # W/m2, of every node's balance
 SOLVED = 1e-6  # W/m2, beyond which an hour counts as not converged
 MOST_ITERATIONS = 60
 LONGEST_STEP = 60.0  # K
-SETTLED = 4  # iterations after which the fluid's properties stay at a mean temperature found to 1e-4 K
+SETTLED = 2  # iterations after which the film stays at a mean fluid temperature found to some 0.02 K
 
 
 class Feed(NamedTuple):
@@ -102,7 +104,7 @@ class SteadyState:
     @property
     def t_plate(self) -> Floats:
         """Mean plate temperature, ``(n,)`` [K]."""
-        return self.nodes[-1]
+        return np.asarray(self.nodes[-1])
 
     def at(self, hours: Mask) -> SteadyState:
         """Return the same for some of the hours."""
@@ -120,7 +122,7 @@ class SteadyState:
 
     def _each(self, change: Callable[[Floats, Floats], Floats], other: SteadyState) -> SteadyState:
         changed = {name: change(value, getattr(other, name)) for name, value in vars(self).items() if name != "losses"}
-        return SteadyState(losses=Losses(*map(change, self.losses, other.losses)), **changed)
+        return SteadyState(losses=Losses(*map(change, self.losses, other.losses)), **changed)  # type: ignore[arg-type] # `converged` is a mask, sliced and put like the others
 
 
 def stream_of(collector: Collector) -> Stream:
@@ -136,9 +138,7 @@ def stream_of(collector: Collector) -> Stream:
     Stream
         At steps of about half a kelvin.
     """
-    low, high = valid_range(collector.fluid, mass_fraction=collector.mass_fraction)
-    t = np.linspace(low, high, 2 * math.ceil(high - low) + 1)
-    fluid = liquid(collector.fluid, mass_fraction=collector.mass_fraction, t=t)
+    t, fluid = _fluid_table(collector.fluid, mass_fraction=collector.mass_fraction)
     absorber = collector.absorber
     per_tube = collector.flow * absorber.pitch * collector.length
     reynolds = 4.0 * per_tube / (math.pi * absorber.inner * fluid.viscosity)
@@ -150,6 +150,14 @@ def stream_of(collector: Collector) -> Stream:
         capacity_rate=collector.flow * fluid.heat_capacity,
         reynolds=reynolds,
     )
+
+
+@lru_cache(maxsize=16)
+def _fluid_table(name: str, *, mass_fraction: float) -> tuple[Floats, Liquid]:
+    """Temperatures over a fluid's range and its properties there, kept for the next collector with the same fluid."""
+    low, high = valid_range(name, mass_fraction=mass_fraction)
+    t = np.linspace(low, high, 2 * math.ceil(high - low) + 1)
+    return t, liquid(name, mass_fraction=mass_fraction, t=t)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -265,9 +273,7 @@ def solve_running(network: Network, around: Surroundings, absorbed: Absorbed, *,
     return _solve(network, around, absorbed, nodes=first, uptake=uptake, t_mean=t_mean)
 
 
-def operate(
-    network: Network, around: Surroundings, absorbed: Absorbed, *, uptake: Uptake
-) -> tuple[SteadyState, Mask]:
+def operate(network: Network, around: Surroundings, absorbed: Absorbed, *, uptake: Uptake) -> tuple[SteadyState, Mask]:
     """Hours as a pump would have them: running where there is heat to gain, standing still otherwise.
 
     Parameters
@@ -285,10 +291,13 @@ def operate(
     Notes
     -----
     The gain has the sign of the absorbed power less the loss of a plate at the fed temperature, so that an hour that loses
-    when solved is an hour to stand still. With no sun and nothing around warmer than the fluid there is nothing to solve.
+    when solved is an hour to stand still. Hours are left out unsolved where nothing around is warmer than the fluid and all
+    sunlight absorbed, the covers' included, is less than what goes through back and edges alone.
     """
+    feed = uptake.feed.temperature
     warmest = np.maximum(np.maximum(around.t_air, around.t_sky), around.t_ground)
-    on = (absorbed.plate > 0.0) | (warmest > uptake.feed.temperature)
+    least_loss = (network.u_back + network.u_edge) * (feed - around.t_air)
+    on = (absorbed.plate + absorbed.covers.sum(axis=0) > least_loss) | (warmest > feed)
     state = solve_running(network, around.at(on), absorbed.at(on), uptake=uptake)
     gains = state.useful > 0.0
     on[on] = gains
@@ -306,7 +315,8 @@ def _solve(
 ) -> SteadyState:
     """Newton on plate and covers of all hours at once; hours that balance are put away."""
     hours = np.arange(nodes.shape[1])
-    here, sun, flow = around, absorbed, _flow(uptake, t_mean)
+    whole = network.facing(around)
+    here, sun, flow = whole, absorbed, _flow(uptake, t_mean)
     solved, solved_flow = nodes, flow
     for iteration in range(MOST_ITERATIONS):
         step = newton_step(network, here, sun_on_covers=sun.covers, nodes=nodes)
@@ -322,10 +332,12 @@ def _solve(
             solved, solved_flow = _put(solved, nodes, hours), _put(solved_flow, held, hours)
             nodes, flow, hours, here, sun = nodes[:, going], flow[:, going], hours[going], here.at(going), sun.at(going)
     solved, solved_flow = _put(solved, nodes, hours), _put(solved_flow, flow, hours)
-    return _state(network, around, absorbed, nodes=solved, flow=solved_flow, uptake=uptake)
+    if hours.size < solved.shape[1] or going.any():
+        step = newton_step(network, whole, sun_on_covers=absorbed.covers, nodes=solved)
+    return _state(step, absorbed, nodes=solved, flow=solved_flow, uptake=uptake)
 
 
-def _put(whole: Floats, part: Floats, hours: Floats) -> Floats:
+def _put(whole: Floats, part: Floats, hours: NDArray[np.intp]) -> Floats:
     """Some hours' columns put in their places; the part itself where it is the whole."""
     if part.shape == whole.shape:
         return part
@@ -355,11 +367,8 @@ def _imbalance(losses: Losses, *, sun: Floats, useful: Floats | float) -> Floats
     return np.maximum(plate, np.abs(losses.cover_residual).max(axis=0)) if len(losses.cover_residual) else plate
 
 
-def _state(
-    network: Network, around: Surroundings, absorbed: Absorbed, *, nodes: Floats, flow: Floats, uptake: Uptake | None
-) -> SteadyState:
-    """Everything about the hours at the temperatures found, each balance taken afresh."""
-    step = newton_step(network, around, sun_on_covers=absorbed.covers, nodes=nodes)
+def _state(step: Step, absorbed: Absorbed, *, nodes: Floats, flow: Floats, uptake: Uptake | None) -> SteadyState:
+    """Everything about the hours at the temperatures found, with the network taken there."""
     t_mean = t_outlet = t_plate = nodes[-1]
     useful, f_prime, f_r = np.zeros_like(t_plate), np.ones_like(t_plate), np.zeros_like(t_plate)
     if uptake:

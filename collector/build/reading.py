@@ -6,6 +6,7 @@ import difflib
 import re
 import tomllib
 from collections.abc import Iterator, Mapping, Sequence
+from itertools import pairwise
 from pathlib import Path
 from typing import Any, get_args
 
@@ -62,17 +63,26 @@ def _text(path: Path) -> str:
     try:
         return path.read_text(encoding="utf-8-sig")
     except OSError as fault:
-        what, do = f"scenario file cannot be read: {fault.strerror}", "check the path, or write a starter with `noonplate new`"
+        what, do = (
+            f"scenario file cannot be read: {fault.strerror}",
+            "check the path, or write a starter with `noonplate new`",
+        )
         raise InputError(Problem(where=str(path), what=what, do=do)) from None
     except UnicodeDecodeError:
-        raise InputError(Problem(where=str(path), what="scenario file is not UTF-8 text", allowed="a TOML file in UTF-8")) from None
+        raise InputError(
+            Problem(where=str(path), what="scenario file is not UTF-8 text", allowed="a TOML file in UTF-8")
+        ) from None
 
 
 def _toml_problem(fault: tomllib.TOMLDecodeError, *, path: Path) -> Problem:
     said = str(fault)
     found = re.search(r"\(at line (\d+), column (\d+)\)", said)
     where = f"{path}:{found[1]}" if found else str(path)
-    return Problem(where=where, what=f"not valid TOML: {said.split(' (at')[0]}", do="text in quotes, decimals with a point, one key a line")
+    return Problem(
+        where=where,
+        what=f"not valid TOML: {said.partition(' (at')[0]}",
+        do="text in quotes, decimals with a point, one key a line",
+    )
 
 
 def _lines(text: str) -> dict[Key, int]:
@@ -112,7 +122,7 @@ def _override(given: dict[str, Any], *, option: str, lines: dict[Key, int]) -> K
         raise InputError(Problem(where="--set", what="not an override", got=repr(option), allowed="key.path=value"))
     path: Key = tuple(int(part) if part.isdigit() else part for part in _split(dotted) if isinstance(part, str))
     table: Any = given
-    for part, following in zip(path[:-1], path[1:], strict=True):
+    for part, following in pairwise(path):
         table = _step(table, part=part, option=option, empty=[] if isinstance(following, int) else {})
     last = path[-1]
     if isinstance(table, dict):
@@ -166,7 +176,13 @@ def _problem(
     line = _line_of(key, lines=lines)
     where = f"--set {name}" if key in options else f"{path}:{line}" if line else str(path)
     what, got, allowed, do = _words(error, key=key, field=field, model=model)
-    return line, Problem(where=where, what=f"{name}: {what}", got=context.get("got") or got, allowed=context.get("allowed") or allowed, do=do)
+    return line, Problem(
+        where=where,
+        what=f"{name}: {what}",
+        got=context.get("got") or got,
+        allowed=context.get("allowed") or allowed,
+        do=do,
+    )
 
 
 def _words(error: Any, *, key: Key, field: FieldInfo | None, model: type[BaseModel]) -> tuple[str, str, str, str]:
@@ -179,7 +195,12 @@ def _words(error: Any, *, key: Key, field: FieldInfo | None, model: type[BaseMod
         return "required key missing", "", allowed, ""
     if kind == "extra_forbidden":
         close = difflib.get_close_matches(str(key[-1]), model.model_fields, n=1, cutoff=0.5)
-        return "unknown key", "", "" if close else ", ".join(model.model_fields), f"did you mean {close[0]}?" if close else ""
+        return (
+            "unknown key",
+            "",
+            "" if close else ", ".join(model.model_fields),
+            f"did you mean {close[0]}?" if close else "",
+        )
     if kind == "literal_error":
         close = difflib.get_close_matches(str(value), re.findall(r"'([^']*)'", allowed), n=1, cutoff=0.5)
         return "unknown name", repr(value), allowed, f"did you mean '{close[0]}'?" if close else ""
@@ -211,7 +232,9 @@ def _allowed(field: FieldInfo | None) -> str:
     names = [name for name in get_args(field.annotation) if isinstance(name, str)]
     if names:
         return ", ".join(f"'{name}'" for name in names)
-    return {str: "text", bool: "true or false"}.get(field.annotation or object, field.description or "")
+    return {"str": "text", "bool": "true or false"}.get(
+        getattr(field.annotation, "__name__", ""), field.description or ""
+    )
 
 
 def _bound(field: FieldInfo, side: str) -> float | None:

@@ -46,13 +46,13 @@ RIVALS: dict[str, tuple[tuple[str, ...], ...]] = {  # sets of keys of a table of
 MOST_COVERS = 3
 
 
-def _quantity(low: float, high: float, unit: str, *, doc: str, default: Any = ...) -> Any:  # noqa: PLR0917 # reads as a range
+def _quantity(low: float, high: float, unit: str, *, doc: str, default: Any = ...) -> Any:
     return Field(default, ge=low, le=high, description=doc, json_schema_extra={"unit": unit})
 
 
 def _fault(message: str, *, key: str, allowed: str = "", got: str = "") -> PydanticCustomError:
     context = {"key": key, "allowed": allowed, "got": got}
-    return PydanticCustomError("noonplate", message, context)  # type: ignore[arg-type] # pydantic wants a literal string; these are ours
+    return PydanticCustomError("noonplate", message, context)
 
 
 class _Table(BaseModel):
@@ -86,7 +86,9 @@ class PlaceTable(_Table):
         description="ground reflectance, or 'file' for the weather file's own column",
         json_schema_extra={"unit": "", "allowed": "0 to 1, or 'file'"},
     )
-    latitude: float | None = _quantity(-90.0, 90.0, "deg", doc="north positive; for weather files that carry none", default=None)
+    latitude: float | None = _quantity(
+        -90.0, 90.0, "deg", doc="north positive; for weather files that carry none", default=None
+    )
     longitude: float | None = _quantity(-180.0, 180.0, "deg", doc="east positive", default=None)
     altitude_m: float | None = _quantity(-450.0, 9000.0, "m", doc="above sea level", default=None)
     utc_offset_h: float | None = _quantity(-12.0, 14.0, "h", doc="local standard time minus UTC", default=None)
@@ -97,8 +99,12 @@ class MountingTable(_Table):
 
     tilt_deg: float = _quantity(0.0, 90.0, "deg", doc="from the horizontal")
     azimuth_deg: float = _quantity(0.0, 360.0, "deg", doc="of the plane's normal, clockwise from north")
-    wind_factor: float | None = _quantity(0.0, 2.0, "", doc="wind at the collector over the file's; 1 if absent", default=None)
-    wind_height_m: float | None = _quantity(0.5, 200.0, "m", doc="or: brings the file's 10 m wind to this height", default=None)
+    wind_factor: float | None = _quantity(
+        0.0, 2.0, "", doc="wind at the collector over the file's; 1 if absent", default=None
+    )
+    wind_height_m: float | None = _quantity(
+        0.5, 200.0, "m", doc="or: brings the file's 10 m wind to this height", default=None
+    )
     building_length_m: float | None = _quantity(
         2.0, 200.0, "m", doc="cube root of the building's volume, for the wind relation 'mitchell'", default=None
     )
@@ -118,7 +124,9 @@ class CoverTable(_Table):
     transmittance: float | None = _quantity(0.05, 1.0, "", doc="or: solar, normal, of the whole cover", default=None)
     reflectance: float | None = _quantity(0.0, 0.5, "", doc="solar, normal, of the whole cover", default=None)
     glass: str | None = Field(None, description="or: a cover of the catalogue")
-    emittance: float | None = _quantity(0.01, 1.0, "", doc="long wave, either face; the catalogue's if a glass is named", default=None)
+    emittance: float | None = _quantity(
+        0.01, 1.0, "", doc="long wave, either face; the catalogue's if a glass is named", default=None
+    )
     gap_mm: float = _quantity(1.0, 200.0, "mm", doc="gas layer beneath this cover")
 
     @model_validator(mode="after")
@@ -145,13 +153,15 @@ class AbsorberTable(_Table):
     absorptance: float | None = _quantity(0.05, 1.0, "", doc="solar, normal", default=None)
     emittance: float | None = _quantity(0.01, 1.0, "", doc="thermal, hemispherical", default=None)
     coating: str | None = Field(None, description="or: a coating of the catalogue")
-    conductivity_W_mK: float | None = _quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)  # noqa: N815 # the file's key
+    conductivity_W_mK: float | None = _quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)
     metal: str | None = Field(None, description="or: a plate material of the catalogue")
     thickness_mm: float = _quantity(0.05, 20.0, "mm", doc="of the plate")
     tube_pitch_mm: float = _quantity(3.0, 1000.0, "mm", doc="from tube to tube")
     tube_outer_mm: float = _quantity(2.0, 100.0, "mm", doc="outer diameter")
     tube_inner_mm: float = _quantity(1.0, 100.0, "mm", doc="inner diameter")
-    bond_W_mK: float | None = _quantity(0.1, 1e5, "W/mK", doc="bond conductance; a perfect bond if absent", default=None)  # noqa: N815
+    bond_W_mK: float | None = _quantity(
+        0.1, 1e5, "W/mK", doc="bond conductance; a perfect bond if absent", default=None
+    )
 
     @model_validator(mode="after")
     def _check(self) -> AbsorberTable:
@@ -172,10 +182,10 @@ class CasingTable(_Table):
     """Insulation behind the plate and around its edges."""
 
     back_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="behind the plate")
-    back_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)  # noqa: N815 # the file's key
+    back_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
     back_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
     edge_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="around the edges")
-    edge_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)  # noqa: N815 # the file's key
+    edge_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
     edge_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
     edge_height_mm: float = _quantity(0.0, 500.0, "mm", doc="of the edge that loses heat; 0 for none")
 
@@ -194,7 +204,9 @@ class CollectorTable(_Table):
     modules: int = Field(ge=1, le=100_000, description="how many")
     length_m: float = _quantity(0.1, 30.0, "m", doc="along the tubes")
     width_m: float = _quantity(0.05, 30.0, "m", doc="across the tubes")
-    gross_area_m2: float | None = _quantity(0.01, 1000.0, "m2", doc="of a module, where results per gross area are wanted", default=None)
+    gross_area_m2: float | None = _quantity(
+        0.01, 1000.0, "m2", doc="of a module, where results per gross area are wanted", default=None
+    )
     cover: list[CoverTable] = Field(
         default_factory=list, max_length=MOST_COVERS, description="outermost first; none is an unglazed collector"
     )
@@ -224,7 +236,12 @@ class FluidTable(_Table):
     def _check(self) -> FluidTable:
         if (self.name == "water") != (self.mass_fraction == 0.0):
             allowed = "0 for water" if self.name == "water" else f"above 0 for {self.name}"
-            raise _fault("mass fraction does not fit the fluid", key="mass_fraction", allowed=allowed, got=f"{self.mass_fraction:g}")
+            raise _fault(
+                "mass fraction does not fit the fluid",
+                key="mass_fraction",
+                allowed=allowed,
+                got=f"{self.mass_fraction:g}",
+            )
         return self
 
 
@@ -240,8 +257,8 @@ _Temperatures = Annotated[
 class OperationTable(_Table):
     """The temperature that the load needs."""
 
-    inlet_C: float | None = _quantity(-50.0, 200.0, "C", doc="fluid temperature held at the inlet", default=None)  # noqa: N815 # the file's key
-    mean_C: _Temperatures | None = Field(  # noqa: N815 # the file's key
+    inlet_C: float | None = _quantity(-50.0, 200.0, "C", doc="fluid temperature held at the inlet", default=None)
+    mean_C: _Temperatures | None = Field(
         None,
         description="or: mean fluid temperature, one or a list",
         json_schema_extra={"unit": "C", "allowed": "a number or a list of numbers, each -50 to 200 C"},
@@ -256,15 +273,23 @@ class OperationTable(_Table):
 class ModelsTable(_Table):
     """Which published relation stands for each step; `noonplate models` lists them with their sources."""
 
-    wind: Literal["watmuff", "mcadams", "mitchell", "jayamaha"] = Field("watmuff", description="wind coefficient")
+    wind: Literal["watmuff", "mcadams", "mitchell", "jayamaha"] = Field(
+        default="watmuff", description="wind coefficient"
+    )
     sky: Literal["berdahl-martin", "martin-berdahl", "brunt", "swinbank", "measured", "ambient"] = Field(
-        "berdahl-martin", description="sky temperature"
+        default="berdahl-martin", description="sky temperature"
     )
     sky_pressure_term: bool = Field(default=False, description="altitude term of the Berdahl-Martin clear sky")
-    tilted_sky: Literal["perez-driesse", "perez", "hay-davies", "isotropic"] = Field("perez-driesse", description="diffuse on the plane")
-    longwave_view: Literal["tilted", "sky"] = Field("tilted", description="what the front radiates to")
-    absorptance_angle: Literal["constant", "flat-black"] = Field("constant", description="absorptance over incidence")
-    diffuse: Literal["integrated", "effective-angle"] = Field("integrated", description="optics of diffuse light")
+    tilted_sky: Literal["perez-driesse", "perez", "hay-davies", "isotropic"] = Field(
+        default="perez-driesse", description="diffuse on the plane"
+    )
+    longwave_view: Literal["tilted", "sky"] = Field(default="tilted", description="what the front radiates to")
+    absorptance_angle: Literal["constant", "flat-black"] = Field(
+        default="constant", description="absorptance over incidence"
+    )
+    diffuse: Literal["integrated", "effective-angle"] = Field(
+        default="integrated", description="optics of diffuse light"
+    )
 
 
 class Scenario(_Table):
@@ -276,13 +301,17 @@ class Scenario(_Table):
     collector: CollectorTable
     fluid: FluidTable
     operation: OperationTable
-    models: ModelsTable = Field(default_factory=ModelsTable)
+    models: ModelsTable = ModelsTable()
 
     @model_validator(mode="after")
     def _check(self) -> Scenario:
         if self.models.wind == "mitchell" and self.mounting.building_length_m is None:
             allowed = "the cube root of the building's volume in m"
-            raise _fault("required key missing: models.wind = 'mitchell' needs it", key="mounting.building_length_m", allowed=allowed)
+            raise _fault(
+                "required key missing: models.wind = 'mitchell' needs it",
+                key="mounting.building_length_m",
+                allowed=allowed,
+            )
         key = "inlet_C" if self.operation.inlet_C is not None else "mean_C"
         coldest = self.operation.inlet_C if self.operation.inlet_C is not None else min(self.operation.mean_C or [0.0])
         freezing = freezing_point(self.fluid.name, mass_fraction=self.fluid.mass_fraction) - 273.15
@@ -290,5 +319,3 @@ class Scenario(_Table):
             got, allowed = f"{coldest:g} C", f"above {freezing:.1f} C, where {self.fluid.name} begins to freeze"
             raise _fault("the fluid is frozen", key=f"operation.{key}", allowed=allowed, got=got)
         return self
-
-

@@ -31,9 +31,7 @@ GAS_CONSTANT_AIR = 287.055  # J/kgK, dry air
 
 
 class Air(NamedTuple):
-    """Dry air in a gap: conductivity [W/mK] and its slope [W/mK2]; Rayleigh number per kelvin and cubic metre [1/Km3] and the
-    slope of its logarithm [1/K].
-    """
+    """Dry air in a gap: conductivity [W/mK] and its slope [W/mK2], Rayleigh number per K and m3 and its log's slope [1/K]."""
 
     conductivity: Floats
     conductivity_slope: Floats
@@ -326,7 +324,7 @@ def mitchell_1976(wind: Floats, *, building_length: float) -> Floats:
     -----
     **Source**: Mitchell, J. Heat Transfer 98 (1976) 1, in Duffie & Beckman, Eq. 3.15.10.
     """
-    return np.maximum(5.0, 8.6 * wind**0.6 / building_length**0.4)
+    return np.asarray(np.maximum(5.0, 8.6 * wind**0.6 / building_length**0.4))
 
 
 def jayamaha_1996(wind: Floats) -> Floats:
@@ -353,8 +351,12 @@ def jayamaha_1996(wind: Floats) -> Floats:
 WIND_RELATIONS = {
     "watmuff": Wind(watmuff_1977, 7.0, "2.8 + 3.0 V; Watmuff, Charters & Proctor 1977, COMPLES 2, 56"),
     "mcadams": Wind(mcadams_1954, 5.0, "5.7 + 3.8 V; McAdams 1954, Heat Transmission; holds some radiation already"),
-    "mitchell": Wind(mitchell_1976, math.inf, "max(5, 8.6 V^0.6/L^0.4), L a building's length; Mitchell 1976, J. Heat Transfer 98, 1"),
-    "jayamaha": Wind(jayamaha_1996, 4.0, "6 + V, middle of a large wall; Jayamaha et al. 1996, Building and Environment 31, 399"),
+    "mitchell": Wind(
+        mitchell_1976, math.inf, "max(5, 8.6 V^0.6/L^0.4), L a building's length; Mitchell 1976, J. Heat Transfer 98, 1"
+    ),
+    "jayamaha": Wind(
+        jayamaha_1996, 4.0, "6 + V, middle of a large wall; Jayamaha et al. 1996, Building and Environment 31, 399"
+    ),
 }
 
 
@@ -430,4 +432,4 @@ def tube_nusselt(*, reynolds: Floats, prandtl: Floats, slenderness: float) -> Fl
     laminar = laminar_entry_tube(reynolds=lower, prandtl=prandtl, slenderness=slenderness)
     turbulent = gnielinski_1976(reynolds=upper, prandtl=prandtl) * (1.0 + slenderness ** (2.0 / 3.0))
     share = np.clip((reynolds - 2300.0) / 7700.0, 0.0, 1.0)
-    return laminar + share * (turbulent - laminar)
+    return np.asarray(laminar + share * (turbulent - laminar))

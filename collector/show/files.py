@@ -73,10 +73,12 @@ def open_folder(path: Path) -> None:
             pass
     except OSError as fault:
         do = "name a folder that can be written to"
-        raise InputError(Problem(where="--out", what=f"can't write there: {fault.strerror}", got=str(path), do=do)) from None
+        raise InputError(
+            Problem(where="--out", what=f"can't write there: {fault.strerror}", got=str(path), do=do)
+        ) from None
 
 
-def write_whole(path: Path, *, write: Callable[[Path], None]) -> None:
+def write_whole(path: Path, *, write: Callable[[Path], object]) -> None:
     """Write a file beside its place and move it there when it is complete.
 
     Parameters
@@ -99,6 +101,8 @@ def write_whole(path: Path, *, write: Callable[[Path], None]) -> None:
         temporary.chmod(0o644)
         temporary.replace(path)
     except OSError as fault:
-        raise InputError(Problem(where=str(path), what=f"can't be written: {fault.strerror}", do="nothing was left half")) from None
+        raise InputError(
+            Problem(where=str(path), what=f"can't be written: {fault.strerror}", do="nothing was left half")
+        ) from None
     finally:
         temporary.unlink(missing_ok=True)

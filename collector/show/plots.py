@@ -13,7 +13,13 @@ from collector.show.tables import MONTHS, PATHS, temperature_words
 
 __all__ = ["FIGURES", "draw_months", "draw_sunlight", "save_figure"]
 
-SUN, HEAT, LOSS, INK, FAINT = "#e8c468", "#a3341f", "#9aa3ab", "#22272b", "#d8dcdf"  # told apart in grey, and without red and green
+SUN, HEAT, LOSS, INK, FAINT = (
+    "#e8c468",
+    "#a3341f",
+    "#9aa3ab",
+    "#22272b",
+    "#d8dcdf",
+)  # told apart in grey, and without red and green
 SIZE = (8.0, 4.6)  # in
 
 
@@ -78,7 +84,10 @@ def draw_sunlight(run: Mapping[str, Any]) -> Figure:
     return figure
 
 
-FIGURES: dict[str, Callable[[Mapping[str, Any]], Figure]] = {"heat-by-month": draw_months, "where-the-sunlight-went": draw_sunlight}
+FIGURES: dict[str, Callable[[Mapping[str, Any]], Figure]] = {
+    "heat-by-month": draw_months,
+    "where-the-sunlight-went": draw_sunlight,
+}
 
 
 def save_figure(figure: Figure, *, path: Path) -> None:
@@ -97,7 +106,14 @@ def save_figure(figure: Figure, *, path: Path) -> None:
 def _bar(axes: Axes, row: int, *, start: float, width: float, colour: str, plane: float) -> None:
     axes.barh(row, width, left=start, height=0.62, color=colour)
     share = 100.0 * width / plane if plane > 0.0 else 0.0
-    axes.text(max(start, start + width) + 0.01 * plane, row, f"{width:.0f}  ({share:.1f} %)", va="center", fontsize=9, color=INK)
+    axes.text(
+        max(start, start + width) + 0.01 * plane,
+        row,
+        f"{width:.0f}  ({share:.1f} %)",
+        va="center",
+        fontsize=9,
+        color=INK,
+    )
 
 
 def _sheet(run: Mapping[str, Any], *, title: str) -> tuple[Figure, Axes]:

@@ -8,10 +8,19 @@ from typing import Any
 
 import numpy as np
 
-__all__ = ["catalogue_text", "check_text", "comparison_text", "models_text", "point_text", "rounded_to_sum", "temperature_words", "year_text"]
+__all__ = [
+    "catalogue_text",
+    "check_text",
+    "comparison_text",
+    "models_text",
+    "point_text",
+    "rounded_to_sum",
+    "temperature_words",
+    "year_text",
+]
 
 WIDTH = 80
-MONTHS = "Jan Feb Mar Apr May Jun Jul Aug Sep Oct Nov Dec".split()
+MONTHS = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
 PATHS = (  # where the sunlight went, in the order of its way through the collector
     ("optical_kWh_m2", "not absorbed by the plate (reflected, cover)"),
     ("idle_kWh_m2", "absorbed while the pump stands still"),
@@ -28,7 +37,12 @@ SHORTER = {
     "top_convection_kWh_m2": "lost in front by convection",
     "top_radiation_kWh_m2": "lost in front by radiation",
 }
-STEP_NAMES = {"tilted_sky": "tilted sky", "wind": "wind relation", "sky": "sky temperature", "diffuse": "diffuse optics"}
+STEP_NAMES = {
+    "tilted_sky": "tilted sky",
+    "wind": "wind relation",
+    "sky": "sky temperature",
+    "diffuse": "diffuse optics",
+}
 BLOCK = 4  # runs side by side
 RUN = Mapping[str, Any]
 
@@ -69,7 +83,16 @@ def year_text(run: RUN) -> str:
     str
         Lines of at most 80 columns.
     """
-    blocks = [_head(run), _sunlight(run), _month_table(run), _sure(run), _hot(run), _sums(run), _basis(run), *_remarks([run])]
+    blocks = [
+        _head(run),
+        _sunlight(run),
+        _month_table(run),
+        _sure(run),
+        _hot(run),
+        _sums(run),
+        _basis(run),
+        *_remarks([run]),
+    ]
     return "\n\n".join("\n".join(block) for block in blocks if block) + "\n"
 
 
@@ -90,7 +113,7 @@ def temperature_words(run: RUN) -> str:
 
 
 def _head(run: RUN) -> list[str]:
-    weather = run["weather"]
+    weather, on = run["weather"], f"{run['hours_on']:5d}"
     north = f"{abs(weather['latitude_deg']):.2f} {'N' if weather['latitude_deg'] >= 0 else 'S'}"
     east = f"{abs(weather['longitude_deg']):.2f} {'E' if weather['longitude_deg'] >= 0 else 'W'}"
     lines = [
@@ -98,12 +121,14 @@ def _head(run: RUN) -> list[str]:
         f"{temperature_words(run)}, {run['area_m2']:.1f} m2 of collector",
         *textwrap.wrap(f"{weather['place']}, {north} {east}", WIDTH),
         "",
-        f"Heat of the year     {run['useful_kWh_m2']:8.1f} kWh/m2    {run['useful_kWh']:12,.0f} kWh    {run['hours_on']:5d} h running",
+        f"Heat of the year     {run['useful_kWh_m2']:8.1f} kWh/m2    {run['useful_kWh']:12,.0f} kWh    {on} h running",
     ]
     if (span := _span(run)) is not None:
         lines.append(f"  other relations    {span[0]:8.1f} to {span[1]:.1f} kWh/m2, see below")
     if "useful_kWh_m2_gross" in run:
-        lines.append(f"  per gross area     {run['useful_kWh_m2_gross']:8.1f} kWh/m2    of {run['gross_area_m2']:.1f} m2 gross")
+        lines.append(
+            f"  per gross area     {run['useful_kWh_m2_gross']:8.1f} kWh/m2    of {run['gross_area_m2']:.1f} m2 gross"
+        )
     return lines
 
 
@@ -144,25 +169,31 @@ def _sure(run: RUN) -> list[str]:
     for row in run["how_sure"]:
         change = "      -" if row["change_pct"] is None else f"{round(row['change_pct'], 1) + 0.0:+6.1f} %"
         words = f"{row['to']} (a bound, not a relation)" if row["bound"] else row["to"]
-        lines.append(f"  {STEP_NAMES.get(row['changed'], row['changed']):<17} {words:<40} {row['useful_kWh_m2']:8.1f} {change}")
+        lines.append(
+            f"  {STEP_NAMES.get(row['changed'], row['changed']):<17} {words:<40} {row['useful_kWh_m2']:8.1f} {change}"
+        )
     lines.append("  Not in this spread: the weather of another year, and the maker's tolerances.")
     return lines
 
 
 def _hot(run: RUN) -> list[str]:
+    stopped = run["stagnation_plate_C"]
     lines = [
-        f"Hottest plate        {run['hottest_plate_C']:5.1f} C as operated, {run['stagnation_plate_C']:.1f} C if the pump never ran",
+        f"Hottest plate        {run['hottest_plate_C']:5.1f} C as operated, {stopped:.1f} C if the pump never ran",
         "  hottest if stopped   mid-hour       plate C   on plane W/m2   air C   wind m/s",
     ]
     lines += [
-        f"  {'':<20} {row['time']:<14} {row['plate_C']:7.1f}   {row['plane_W_m2']:13.0f}   {row['air_C']:5.1f}   {row['wind_m_s']:8.1f}"
+        f"{'':<23} {row['time']:<14} {row['plate_C']:7.1f}   {row['plane_W_m2']:13.0f}   {row['air_C']:5.1f}   "
+        f"{row['wind_m_s']:8.1f}"
         for row in run["hottest_hours"][:3]
     ]
     return lines
 
 
 def _sums(run: RUN) -> list[str]:
-    unsolved = "every hour converged" if not run["unconverged_hours"] else f"{run['unconverged_hours']} HOURS NOT CONVERGED"
+    unsolved = (
+        "every hour converged" if not run["unconverged_hours"] else f"{run['unconverged_hours']} HOURS NOT CONVERGED"
+    )
     return [
         "How the sums close",
         f"  sunlight less all that is listed above              {run['unaccounted_kWh_m2']:9.1e} kWh/m2",
@@ -205,7 +236,8 @@ def _remarks(runs: Sequence[RUN]) -> list[list[str]]:
             for remark in run.get(key, ()):
                 about.setdefault(remark, []).append(str(number))
         said = [
-            remark if len(numbers) == len(runs) else f"[{', '.join(numbers)}] {remark}" for remark, numbers in about.items()
+            remark if len(numbers) == len(runs) else f"[{', '.join(numbers)}] {remark}"
+            for remark, numbers in about.items()
         ]
         if said or key == "notices":
             lines = [line for remark in said or ["nothing"] for line in _hung(remark, head="  - ")]
@@ -226,10 +258,14 @@ def comparison_text(runs: Sequence[RUN]) -> str:
     str
         Lines of at most 80 columns.
     """
-    legend = [line for number, run in enumerate(runs, start=1) for line in _hung(f"{run['title']}, {temperature_words(run)}", head=f"{number:3d}  ")]
+    legend = [
+        line
+        for number, run in enumerate(runs, start=1)
+        for line in _hung(f"{run['title']}, {temperature_words(run)}", head=f"{number:3d}  ")
+    ]
     blocks = [legend]
-    for start in range(0, len(runs), BLOCK):
-        blocks.append(_side_by_side(runs[start : start + BLOCK], first=start + 1))
+    starts = range(0, len(runs), BLOCK)
+    blocks += [_side_by_side(runs[start : start + BLOCK], first=start + 1) for start in starts]
     blocks += _remarks(runs)
     blocks.append(["One run alone prints its whole page: months, spread, hottest hours, sources."])
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
@@ -344,7 +380,9 @@ def models_text(relations: Mapping[str, Mapping[str, str]]) -> str:
     blocks = []
     for step, names in relations.items():
         title = "without a choice" if step == "fixed" else "fluid.name" if step == "fluid" else f"models.{step}"
-        blocks.append([title, *(line for name, source in names.items() for line in _hung(source, head=f"  {name:<20}"))])
+        blocks.append(
+            [title, *(line for name, source in names.items() for line in _hung(source, head=f"  {name:<20}"))]
+        )
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
 
 
@@ -367,6 +405,11 @@ def catalogue_text(shelves: Mapping[str, Mapping[str, Mapping[str, Any]]]) -> st
         for name, entry in entries.items():
             values = ", ".join(f"{key} {value:g}" for key, value in entry.items() if not isinstance(value, str))
             lines += [f'  "{name}"', *_hung(values, head="      ")]
-            lines += [line for key in ("note", "source") if key in entry for line in _hung(f"{key}: {entry[key]}", head="      ")]
+            lines += [
+                line
+                for key in ("note", "source")
+                if key in entry
+                for line in _hung(f"{key}: {entry[key]}", head="      ")
+            ]
         lines.append("")
     return "\n".join(lines)

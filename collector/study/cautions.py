@@ -74,7 +74,8 @@ def at_stagnation(plate_C: float, *, fluid: str) -> Iterator[str]:  # noqa: N803
     elif plate_C > 60.0:
         yield f"With the pump stopped the plate reaches {plate_C:.0f} C: hot enough to burn."
     if plate_C > GLYCOL_AGES and "glycol" in fluid:
-        yield f"{fluid} ages fast above {GLYCOL_AGES:.0f} C and its data end at 100 C: let it leave the collector when the pump stops."
+        limits = f"ages fast above {GLYCOL_AGES:.0f} C and its data end at 100 C"
+        yield f"{fluid.capitalize()} {limits}: let it leave the collector when the pump stops."
 
 
 def _when_cold(plate_C: float, scenario: Scenario) -> Iterator[str]:  # noqa: N803 # the unit's symbol

@@ -66,7 +66,12 @@ class Point:
 
     def __post_init__(self) -> None:
         wrong = [
-            Problem(where=f"--{name.replace('_', '-')}", what="out of range", got=f"{value:g}", allowed=f"{low:g} to {high:g} {unit}")
+            Problem(
+                where=f"--{name.replace('_', '-')}",
+                what="out of range",
+                got=f"{value:g}",
+                allowed=f"{low:g} to {high:g} {unit}",
+            )
             for name, (low, high, unit) in BOUNDS.items()
             if (value := getattr(self, name)) is not None and not low <= value <= high
         ]

@@ -22,7 +22,15 @@ from weather.stations import open_weather
 from weather.sun import Sun, sun_position
 from weather.year import Floats, Mask, WeatherYear
 
-__all__ = ["Conditions", "HeatYear", "heat_years", "open_scenario_weather", "standing", "wind_at_collector", "wind_coefficient"]
+__all__ = [
+    "Conditions",
+    "HeatYear",
+    "heat_years",
+    "open_scenario_weather",
+    "standing",
+    "wind_at_collector",
+    "wind_coefficient",
+]
 
 WIND_PROFILE = 1.0 / 7.0  # exponent of the wind's rise with height over open country; common practice, no source
 
