@@ -180,10 +180,10 @@ def _hot(run: RUN) -> list[str]:
     stopped = run["stagnation_plate_C"]
     lines = [
         f"Hottest plate        {run['hottest_plate_C']:5.1f} C as operated, {stopped:.1f} C if the pump never ran",
-        "  hottest if stopped   mid-hour       plate C   on plane W/m2   air C   wind m/s",
+        "  hottest if stopped   mid-hour       plate C   on plane W/m2   air C  wind m/s",
     ]
     lines += [
-        f"{'':<23} {row['time']:<14} {row['plate_C']:7.1f}   {row['plane_W_m2']:13.0f}   {row['air_C']:5.1f}   "
+        f"{'':<22} {row['time']:<14} {row['plate_C']:7.1f}   {row['plane_W_m2']:13.0f}   {row['air_C']:5.1f}  "
         f"{row['wind_m_s']:8.1f}"
         for row in run["hottest_hours"][:3]
     ]
@@ -192,7 +192,7 @@ def _hot(run: RUN) -> list[str]:
 
 def _sums(run: RUN) -> list[str]:
     unsolved = (
-        "every hour converged" if not run["unconverged_hours"] else f"{run['unconverged_hours']} HOURS NOT CONVERGED"
+        "all hours converged" if not run["unconverged_hours"] else f"{run['unconverged_hours']} h DID NOT CONVERGE"
     )
     return [
         "How the sums close",
