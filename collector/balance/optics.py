@@ -152,18 +152,16 @@ def _integrated(shares: Callable[[Floats], Floats], *, tilt_deg: float) -> tuple
     """Isotropic sky and ground over their part of the hemisphere, horizon brightening along the horizon's line."""
     theta, weight = _hemisphere()
     tilt = math.radians(tilt_deg)
-    with np.errstate(divide="ignore"):
-        crossing = (
-            np.clip(-math.cos(tilt) * np.cos(theta) / (math.sin(tilt) * np.sin(theta)), -1.0, 1.0) if tilt else -1.0
-        )
-    sky_part = np.arccos(crossing) / math.pi * np.ones_like(theta)
+    above, across = math.cos(tilt) * np.cos(theta), math.sin(tilt) * np.sin(theta)
+    sky_part = np.arccos(np.clip(-above / np.maximum(across, 1e-12), -1.0, 1.0)) / math.pi
     values = shares(np.degrees(theta))
     around = (np.arange(256) + 0.5) / 256.0 * (math.pi / 2.0)
     line = shares(np.degrees(np.arccos(math.sin(tilt) * np.cos(around))))
+    ground = weight * (1.0 - sky_part)
     return (
         _mean(values, weight * sky_part),
         _mean(line, np.cos(around)),
-        _mean(values, weight * (1.0 - sky_part)) if tilt else shares(np.array([90.0]))[:, 0],
+        _mean(values, ground) if ground.any() else shares(np.array([90.0]))[:, 0],  # lying flat: grazing light at most
     )
 
 
