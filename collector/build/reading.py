@@ -6,7 +6,6 @@ import difflib
 import re
 import tomllib
 from collections.abc import Iterator, Mapping, Sequence
-from itertools import pairwise
 from pathlib import Path
 from typing import Any, get_args
 
@@ -122,8 +121,8 @@ def _override(given: dict[str, Any], *, option: str, lines: dict[Key, int]) -> K
         raise InputError(Problem(where="--set", what="not an override", got=repr(option), allowed="key.path=value"))
     path: Key = tuple(int(part) if part.isdigit() else part for part in _split(dotted) if isinstance(part, str))
     table: Any = given
-    for part, following in pairwise(path):
-        table = _step(table, part=part, option=option, empty=[] if isinstance(following, int) else {})
+    for part in path[:-1]:
+        table = _step(table, part=part, option=option)
     last = path[-1]
     if isinstance(table, dict):
         _drop_rivals(table, key=str(last))
@@ -136,9 +135,9 @@ def _override(given: dict[str, Any], *, option: str, lines: dict[Key, int]) -> K
     return path
 
 
-def _step(table: Any, *, part: str | int, option: str, empty: Any) -> Any:
+def _step(table: Any, *, part: str | int, option: str) -> Any:
     if isinstance(table, dict):
-        return table.setdefault(str(part), empty)
+        return table.setdefault(str(part), {})
     if isinstance(table, list) and isinstance(part, int) and part < len(table):
         return table[part]
     raise InputError(_no_such_place(option))
@@ -174,7 +173,8 @@ def _problem(
     key, field, model = _walk(loc)
     name = ".".join(str(part) for part in key)
     line = _line_of(key, lines=lines)
-    where = f"--set {name}" if key in options else f"{path}:{line}" if line else str(path)
+    overridden = any(key[: len(option)] == option for option in options)
+    where = "--set" if overridden else f"{path}:{line}" if line else str(path)
     what, got, allowed, do = _words(error, key=key, field=field, model=model)
     return line, Problem(
         where=where,

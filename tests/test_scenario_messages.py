@@ -1,0 +1,453 @@
+"""What a user is told about a scenario that can't be right: which line, which key, what was given, what is allowed."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import get_args
+
+import pytest
+
+from collector.build.catalogue import SHELVES, shelf
+from collector.build.reading import read_scenario
+from collector.build.scenario import CHOICES, RIVALS, FluidTable, ModelsTable, Scenario
+from collector.physics.fluids import FLUIDS, freezing_point
+from weather.errors import InputError
+
+ROOT = Path(__file__).parents[1]
+STARTER = ROOT / "collector" / "build" / "data" / "starter.toml"
+SCENARIOS = sorted((ROOT / "scenarios").glob("*.toml"))
+SOUND = """\
+title = "Bench for messages"
+
+[place]
+weather = "greensboro"
+albedo = 0.25
+
+[mounting]
+tilt_deg = 35.0
+azimuth_deg = 190.0
+
+[collector]
+modules = 3
+length_m = 1.9
+width_m = 1.0
+
+[[collector.cover]]
+glass = "low-iron 4 mm"
+gap_mm = 22.0
+
+[[collector.cover]] # inner
+transmittance = 0.88
+reflectance = 0.09
+emittance = 0.86
+gap_mm = 27.0
+
+[collector.absorber]
+absorptance = 0.93
+emittance = 0.07
+metal = "copper"
+thickness_mm = 0.3
+tube_pitch_mm = 120.0
+tube_outer_mm = 12.0
+tube_inner_mm = 10.5
+
+[collector.casing]
+back_thickness_mm = 60.0
+back_insulation = "mineral wool"
+edge_thickness_mm = 20.0
+edge_conductivity_W_mK = 0.045
+edge_height_mm = 90.0
+
+[fluid]
+name = "water"
+mass_fraction = 0.0
+flow_kg_s_m2 = 0.018
+
+[operation]
+inlet_C = 45.0
+
+[models]
+wind = "mcadams"
+sky = "brunt"
+"""
+COVER_SETS = "refractive_index with extinction_per_m with thickness_mm, or transmittance with reflectance, or glass"
+
+
+def altered(*changes: tuple[str, str]) -> str:
+    """The sound text with each fragment, which must stand in it once, replaced."""
+    text = SOUND
+    for old, new in changes:
+        assert text.count(old) == 1, f"{old!r} stands {text.count(old)} times"
+        text = text.replace(old, new)
+    return text
+
+
+def line_of(text: str, start: str, *, nth: int = 1) -> int:
+    """Line, from 1, of the nth one that begins so."""
+    return [number for number, line in enumerate(text.splitlines(), start=1) if line.startswith(start)][nth - 1]
+
+
+@pytest.fixture
+def told(tmp_path):
+    """What reading this text says, a string a fault; the file goes by `it.toml`."""
+
+    def tell(text: str | bytes, *overrides: str) -> list[str]:
+        path = tmp_path / "it.toml"
+        path.write_bytes(text if isinstance(text, bytes) else text.encode())
+        with pytest.raises(InputError) as caught:
+            read_scenario(path, overrides=overrides)
+        return [str(problem).replace(f"{tmp_path}/", "") for problem in caught.value.problems]
+
+    return tell
+
+
+@pytest.fixture
+def accepted(tmp_path):
+    """The scenario that this text comes to."""
+
+    def read(text: str, *overrides: str) -> Scenario:
+        path = tmp_path / "it.toml"
+        path.write_text(text, encoding="utf-8")
+        return read_scenario(path, overrides=overrides)
+
+    return read
+
+
+# --- files that are not read at all
+
+
+def test_missing_file(tmp_path):
+    path = tmp_path / "nowhere.toml"
+    with pytest.raises(InputError) as caught:
+        read_scenario(path)
+    assert str(caught.value) == (
+        f"{path}: scenario file cannot be read: No such file or directory; "
+        "check the path, or write a starter with `noonplate new`"
+    )
+
+
+def test_a_folder_for_a_file(tmp_path):
+    with pytest.raises(InputError) as caught:
+        read_scenario(tmp_path)
+    assert str(caught.value).startswith(f"{tmp_path}: scenario file cannot be read: Is a directory; ")
+
+
+@pytest.mark.parametrize("encoding", ["latin-1", "utf-16"])
+def test_not_utf8(told, encoding):
+    text = SOUND.replace("Bench", "B\u00e4nk").encode(encoding)
+    assert told(text) == ["it.toml: scenario file is not UTF-8 text; allowed: a TOML file in UTF-8"]
+
+
+def test_a_byte_order_mark_is_no_fault(accepted):
+    assert accepted("\ufeff" + SOUND).title == "Bench for messages"
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "at", "words"),
+    [
+        ("tilt_deg = 35.0", "tilt_deg = 35,0", "tilt_deg", "Expected newline or end of document after a statement"),
+        ('"greensboro"', "greensboro", "weather", "Invalid value"),
+        ("[fluid]", "[fluid", "[fluid", "Expected ']' at the end of a table declaration"),
+        ('"brunt"', '"brunt', "sky", "Illegal character '\\n'"),
+        ("albedo = 0.25", "albedo = 0.25\nalbedo = 0.3", "albedo = 0.3", "Cannot overwrite a value"),
+    ],
+    ids=["decimal comma", "no quotes", "open bracket", "open quote", "key twice"],
+)
+def test_broken_toml(told, old, new, at, words):
+    text = altered((old, new))
+    (message,) = told(text)
+    line = line_of(text, at)
+    assert message.startswith((f"it.toml:{line}: not valid TOML: {words}", f"it.toml:{line + 1}: not valid TOML: {words}"))
+    if words != "Cannot overwrite a value":  # Python's reader stands at the next line when it sees a key twice
+        assert message.startswith(f"it.toml:{line}:")
+    assert message.endswith("; text in quotes, decimals with a point, one key a line")
+
+
+def test_toml_that_ends_early_has_no_line(told):
+    (message,) = told("title = ")  # Python's reader says "at end of document" here and names no line
+    assert message.startswith("it.toml: not valid TOML: Invalid value; ")
+
+
+@pytest.mark.xfail(strict=True, raises=(ValueError, RecursionError), reason="product fault: a traceback, no message")
+@pytest.mark.parametrize("value", ["1" * 5000, "[" * 3000 + "]" * 3000], ids=["5000 digits", "3000 brackets"])
+def test_toml_that_python_itself_refuses(told, value):
+    (message,) = told(altered(("modules = 3", f"modules = {value}")))
+    assert "not valid TOML" in message
+
+
+# --- one fault each: fragment replaced, what stands there instead, start of the line that must be named, the message
+
+
+FAULTS = {
+    "key missing": (
+        "tilt_deg = 35.0\n", "", "[mounting]",
+        "mounting.tilt_deg: required key missing; allowed: 0 to 90 deg",
+    ),
+    "whole number key missing": (
+        "modules = 3\n", "", "[collector]",
+        "collector.modules: required key missing; allowed: 1 to 100000",
+    ),
+    "title missing": (
+        'title = "Bench for messages"\n', "", None,
+        "title: required key missing; allowed: text",
+    ),
+    "unknown key, near another": (
+        "azimuth_deg = 190.0", "azimuth_deg = 190.0\nwind_facter = 0.5", "wind_facter",
+        "mounting.wind_facter: unknown key; did you mean wind_factor?",
+    ),
+    "unknown key, near none": (
+        "azimuth_deg = 190.0", "azimuth_deg = 190.0\nqqq = 0.5", "qqq",
+        "mounting.qqq: unknown key; "
+        "allowed: tilt_deg, azimuth_deg, wind_factor, wind_height_m, building_length_m",
+    ),
+    "unknown table, near another": (
+        "[models]", "[modles]", "[modles]",
+        "modles: unknown key; did you mean models?",
+    ),
+    "unknown table, near none": (
+        "[models]", "[qqq]", "[qqq]",
+        "qqq: unknown key; allowed: title, place, mounting, collector, fluid, operation, models",
+    ),
+    "text for a number": (
+        "length_m = 1.9", 'length_m = "1.9 m"', "length_m",
+        "collector.length_m: wrong type; got '1.9 m' (text); allowed: 0.1 to 30 m",
+    ),
+    "bool for a number": (
+        "flow_kg_s_m2 = 0.018", "flow_kg_s_m2 = true", "flow_kg_s_m2",
+        "fluid.flow_kg_s_m2: wrong type; got True (true or false); allowed: 0.0005 to 0.5 kg/s m2",
+    ),
+    "list for a number": (
+        "width_m = 1.0", "width_m = [1.0]", "width_m",
+        "collector.width_m: wrong type; got [1.0] (a list); allowed: 0.05 to 30 m",
+    ),
+    "table for a number": (
+        "width_m = 1.0", "width_m = {m = 1.0}", "width_m",
+        "collector.width_m: wrong type; got {'m': 1.0} (a table); allowed: 0.05 to 30 m",
+    ),
+    "number for text": (
+        'weather = "greensboro"', "weather = 27", "weather",
+        "place.weather: wrong type; got 27; allowed: text",
+    ),
+    "fraction for a whole number": (
+        "modules = 3", "modules = 2.5", "modules",
+        "collector.modules: wrong type; got 2.5; allowed: 1 to 100000",
+    ),
+    "text for yes or no": (
+        'sky = "brunt"', 'sky_pressure_term = "yes"', "sky_pressure_term",
+        "models.sky_pressure_term: wrong type; got 'yes' (text); allowed: true or false",
+    ),
+    "number for a table": (
+        "[operation]\ninlet_C = 45.0\n\n[models]", "[models]\noperation = 45.0", "operation",
+        None,  # a key of [models] then; told below
+    ),
+    "too low": (
+        "tube_pitch_mm = 120.0", "tube_pitch_mm = 2.9", "tube_pitch_mm",
+        "collector.absorber.tube_pitch_mm: out of range; got 2.9; allowed: 3 to 1000 mm",
+    ),
+    "too high": (
+        "tilt_deg = 35.0", "tilt_deg = 90.5", "tilt_deg",
+        "mounting.tilt_deg: out of range; got 90.5; allowed: 0 to 90 deg",
+    ),
+    "none of it": (
+        "modules = 3", "modules = 0", "modules",
+        "collector.modules: out of range; got 0; allowed: 1 to 100000",
+    ),
+    "nan": (
+        "back_thickness_mm = 60.0", "back_thickness_mm = nan", "back_thickness_mm",
+        "collector.casing.back_thickness_mm: out of range; got nan; allowed: 1 to 500 mm",
+    ),
+    "inf": (
+        "inlet_C = 45.0", "inlet_C = inf", "inlet_C",
+        "operation.inlet_C: out of range; got inf; allowed: -50 to 200 C",
+    ),
+    "minus inf": (
+        "inlet_C = 45.0", "inlet_C = -inf", "inlet_C",
+        "operation.inlet_C: out of range; got -inf; allowed: -50 to 200 C",
+    ),
+    "place given outside the globe": (
+        "albedo = 0.25", "albedo = 0.25\nlongitude = 181.0", "longitude",
+        "place.longitude: out of range; got 181.0; allowed: -180 to 180 deg",
+    ),
+    "unknown name, near another": (
+        '"mcadams"', '"mcadam"', "wind",
+        "models.wind: unknown name; got 'mcadam'; "
+        "allowed: 'watmuff', 'mcadams', 'mitchell', 'jayamaha'; did you mean 'mcadams'?",
+    ),
+    "unknown name, near none": (
+        '"brunt"', '"zzz"', "sky",
+        "models.sky: unknown name; got 'zzz'; "
+        "allowed: 'berdahl-martin', 'martin-berdahl', 'brunt', 'swinbank', 'measured', 'ambient'",
+    ),
+    "number for a name": (
+        '"mcadams"', "3", "wind",
+        "models.wind: unknown name; got 3; allowed: 'watmuff', 'mcadams', 'mitchell', 'jayamaha'",
+    ),
+    "unknown fluid": (
+        'name = "water"', 'name = "propylen glycol"', "name",
+        "fluid.name: unknown name; got 'propylen glycol'; "
+        "allowed: 'water', 'propylene glycol', 'ethylene glycol'; did you mean 'propylene glycol'?",
+    ),
+    "empty title": (
+        '"Bench for messages"', '""', "title",
+        "title: is empty; allowed: text",
+    ),
+    "inlet and mean together": (
+        "inlet_C = 45.0", "inlet_C = 45.0\nmean_C = 50.0", "mean_C",
+        "operation.mean_C: keys that exclude each other; got inlet_C, mean_C; allowed: inlet_C, or mean_C",
+    ),
+    "no temperature": (
+        "inlet_C = 45.0", "", "[operation]",
+        "operation.inlet_C: nothing given; allowed: inlet_C, or mean_C",
+    ),
+    "two ways for the wind": (
+        "azimuth_deg = 190.0", "azimuth_deg = 190.0\nwind_factor = 0.5\nwind_height_m = 4.0", "wind_height_m",
+        "mounting.wind_height_m: keys that exclude each other; got wind_factor, wind_height_m; "
+        "allowed: wind_factor, or wind_height_m",
+    ),
+    "coating named and given": (
+        "absorptance = 0.93", 'absorptance = 0.93\ncoating = "copper oxide"', "coating",
+        "collector.absorber.coating: keys that exclude each other; got absorptance, emittance, coating; "
+        "allowed: absorptance with emittance, or coating",
+    ),
+    "metal named and given": (
+        'metal = "copper"', 'metal = "copper"\nconductivity_W_mK = 380.0', "metal",
+        "collector.absorber.metal: keys that exclude each other; got conductivity_W_mK, metal; "
+        "allowed: conductivity_W_mK, or metal",
+    ),
+    "back insulation named and given": (
+        'back_insulation = "mineral wool"', 'back_insulation = "mineral wool"\nback_conductivity_W_mK = 0.04',
+        "back_insulation",
+        "collector.casing.back_insulation: keys that exclude each other; "
+        "got back_conductivity_W_mK, back_insulation; allowed: back_conductivity_W_mK, or back_insulation",
+    ),
+    "edge insulation named and given": (
+        "edge_conductivity_W_mK = 0.045", 'edge_conductivity_W_mK = 0.045\nedge_insulation = "plywood"',
+        "edge_insulation",
+        "collector.casing.edge_insulation: keys that exclude each other; "
+        "got edge_conductivity_W_mK, edge_insulation; allowed: edge_conductivity_W_mK, or edge_insulation",
+    ),
+    "glass named and given": (
+        'glass = "low-iron 4 mm"', 'glass = "low-iron 4 mm"\nthickness_mm = 4.0', "glass",
+        "collector.cover.0.glass: keys that exclude each other; got thickness_mm, glass; "
+        f"allowed: {COVER_SETS}",
+    ),
+    "coating in part": (
+        "emittance = 0.07\n", "", "[collector.absorber]",
+        "collector.absorber.emittance: required key missing beside its companions; "
+        "allowed: absorptance with emittance, or coating",
+    ),
+    "cover in part": (
+        "reflectance = 0.09\n", "", "[[collector.cover]] # inner",
+        f"collector.cover.1.reflectance: required key missing beside its companions; allowed: {COVER_SETS}",
+    ),
+    "cover of nothing": (
+        "transmittance = 0.88\nreflectance = 0.09\n", "", "[[collector.cover]] # inner",
+        f"collector.cover.1.refractive_index: nothing given; allowed: {COVER_SETS}",
+    ),
+    "cover without emittance": (
+        "emittance = 0.86\n", "", "[[collector.cover]] # inner",
+        "collector.cover.1.emittance: required key missing; allowed: 0.01 to 1",
+    ),
+    "wrong in the second cover": (
+        "gap_mm = 27.0", "gap_mm = 270.0", "gap_mm = 270.0",
+        "collector.cover.1.gap_mm: out of range; got 270.0; allowed: 1 to 200 mm",
+    ),
+    "unknown key in the second cover": (
+        "gap_mm = 27.0", "gap_mm = 27.0\nthicknes_mm = 3.0", "thicknes_mm",
+        "collector.cover.1.thicknes_mm: unknown key; did you mean thickness_mm?",
+    ),
+    "no such glass": (
+        '"low-iron 4 mm"', '"low-iron 5 mm"', "glass",
+        f"collector.cover.0.glass: not in the catalogue; got 'low-iron 5 mm'; allowed: {', '.join(shelf('covers'))}",
+    ),
+    "no such metal": (
+        'metal = "copper"', 'metal = "cooper"', "metal",
+        f"collector.absorber.metal: not in the catalogue; got 'cooper'; allowed: {', '.join(shelf('metals'))}",
+    ),
+    "no such coating": (
+        "absorptance = 0.93\nemittance = 0.07", 'coating = "soot"', "coating",
+        f"collector.absorber.coating: not in the catalogue; got 'soot'; allowed: {', '.join(shelf('coatings'))}",
+    ),
+    "no such back insulation": (
+        '"mineral wool"', '"straw"', "back_insulation",
+        "collector.casing.back_insulation: not in the catalogue; got 'straw'; "
+        f"allowed: {', '.join(shelf('insulation'))}",
+    ),
+    "no such edge insulation": (
+        "edge_conductivity_W_mK = 0.045", 'edge_insulation = "hay"', "edge_insulation",
+        "collector.casing.edge_insulation: not in the catalogue; got 'hay'; "
+        f"allowed: {', '.join(shelf('insulation'))}",
+    ),
+    "more light than there is": (  # 0.88 + 0.13 is above 1
+        "reflectance = 0.09", "reflectance = 0.13", "transmittance",
+        "collector.cover.1.transmittance: no plane slab has this pair of normal transmittance and reflectance; "
+        "got 0.88 with reflectance 0.13; allowed: together at most 1",
+    ),
+    "tube without a wall": (
+        "tube_inner_mm = 10.5", "tube_inner_mm = 12.0", "tube_inner_mm",
+        "collector.absorber.tube_inner_mm: tube without a wall; got 12 mm; allowed: below tube_outer_mm, 12 mm",
+    ),
+    "tubes overlap": (
+        "tube_pitch_mm = 120.0", "tube_pitch_mm = 11.5", "tube_outer_mm",
+        "collector.absorber.tube_outer_mm: tubes overlap; got 12 mm; allowed: at most tube_pitch_mm, 11.5 mm",
+    ),
+    "gross area too small": (  # 1.9 m x 1.0 m
+        "width_m = 1.0", "width_m = 1.0\ngross_area_m2 = 1.85", "gross_area_m2",
+        "collector.gross_area_m2: gross area smaller than the collector; got 1.85 m2; "
+        "allowed: at least length x width, 1.9 m2",
+    ),
+    "pitch wider than the collector": (
+        "width_m = 1.0", "width_m = 0.115", "tube_pitch_mm",
+        "collector.absorber.tube_pitch_mm: not one tube in the width; got 120 mm; allowed: at most width_m, 115 mm",
+    ),
+    "glycol in water": (
+        "mass_fraction = 0.0", "mass_fraction = 0.3", "mass_fraction",
+        "fluid.mass_fraction: mass fraction does not fit the fluid; got 0.3; allowed: 0 for water",
+    ),
+    "glycol without glycol": (
+        'name = "water"', 'name = "ethylene glycol"', "mass_fraction",
+        "fluid.mass_fraction: mass fraction does not fit the fluid; got 0; allowed: above 0 for ethylene glycol",
+    ),
+    "ice": (
+        "inlet_C = 45.0", "inlet_C = -0.5", "inlet_C",
+        "operation.inlet_C: the fluid is frozen; got -0.5 C; allowed: above 0.0 C, where water begins to freeze",
+    ),
+    "ice at the coldest of a list": (
+        "inlet_C = 45.0", "mean_C = [30.0, -4.0, 60.0]", "mean_C",
+        "operation.mean_C: the fluid is frozen; got -4 C; allowed: above 0.0 C, where water begins to freeze",
+    ),
+    "mitchell without a building": (
+        '"mcadams"', '"mitchell"', "[mounting]",
+        "mounting.building_length_m: required key missing: models.wind = 'mitchell' needs it; "
+        "allowed: the cube root of the building's volume in m",
+    ),
+    "empty list": (
+        "inlet_C = 45.0", "mean_C = []", "mean_C",
+        "operation.mean_C: is empty; allowed: a number or a list of numbers, each -50 to 200 C",
+    ),
+    "text inside a list": (
+        "inlet_C = 45.0", 'mean_C = [30.0, "warm"]', "mean_C",
+        "operation.mean_C.1: wrong type; got 'warm' (text); "
+        "allowed: a number or a list of numbers, each -50 to 200 C",
+    ),
+    "too hot inside a list": (
+        "inlet_C = 45.0", "mean_C = [30.0, 201.0]", "mean_C",
+        "operation.mean_C.1: out of range; got 201.0; allowed: a number or a list of numbers, each -50 to 200 C",
+    ),
+    "list too long": (
+        "inlet_C = 45.0", f"mean_C = [{'30.0, ' * 51}]", "mean_C",
+        "operation.mean_C: too many entries; got 51; allowed: at most 50",
+    ),
+    "too many covers": (
+        "[collector.absorber]", '[[collector.cover]]\nglass = "window glass 3.2 mm"\ngap_mm = 20.0\n' * 2
+        + "\n[collector.absorber]", "[collector]",
+        "collector.cover: too many entries; got 4; allowed: at most 3",
+    ),
+}  # fmt: skip
+del FAULTS["number for a table"]
+
+
+@pytest.mark.parametrize(("old", "new", "at", "message"), FAULTS.values(), ids=FAULTS)
+def test_fault(told, old, new, at, message):
+    text = altered((old, new))
+    assert told(text) == [f"it.toml:{line_of(text, at)}: {message}" if at else f"it.toml: {message}"]
