@@ -25,7 +25,7 @@ TMY3_NAMES = {
 }  # fmt: skip
 TMY2 = {  # first and last character of each field, from the TMY2 manual's table of positions (a blank stands first)
     "year": (1, 3), "month": (3, 5), "day": (5, 7), "hour": (7, 9), "ghi": (17, 21), "dni": (23, 27), "dhi": (29, 33),
-    "cloud": (63, 65), "t_air": (67, 71), "t_dew": (73, 77), "pressure": (85, 89), "wind": (97, 100),
+    "cloud": (63, 65), "t_air": (67, 71), "t_dew": (73, 77), "pressure": (84, 88), "wind": (95, 98),
 }  # fmt: skip
 TMY2_MISSING = {"ghi": "9999", "dni": "9999", "dhi": "9999", "t_air": "9999", "t_dew": "9999", "wind": "999"}
 ROWS = list[list[str]]

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from collector.build.collector import Collector
 from collector.physics.convection import air, gap_nusselt
@@ -37,7 +38,7 @@ class Facing:
     h_wind: Floats
     radiant: Floats
 
-    def at(self, hours: Mask) -> Facing:
+    def at(self, hours: Mask | NDArray[np.intp]) -> Facing:
         """Return the same for some of the hours."""
         return Facing(t_air=self.t_air[hours], h_wind=self.h_wind[hours], radiant=self.radiant[hours])
 

@@ -7,6 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from collector.build.collector import Collector
 from collector.physics.glazing import (
@@ -31,7 +32,7 @@ class Absorbed:
     plate: Floats
     covers: Floats
 
-    def at(self, hours: Mask) -> Absorbed:
+    def at(self, hours: Mask | NDArray[np.intp]) -> Absorbed:
         """Return the same for some of the hours."""
         return Absorbed(plate=self.plate[hours], covers=self.covers[:, hours])
 

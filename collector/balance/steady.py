@@ -162,11 +162,13 @@ def _fluid_table(name: str, *, mass_fraction: float) -> tuple[Floats, Liquid]:
 
 @dataclass(frozen=True, kw_only=True)
 class Uptake:
-    """A collector's tubes with their stream and the temperature they are fed at."""
+    """A collector's tubes with their stream, the temperature they are fed at, and how far above it the pump starts and stops."""
 
     collector: Collector
     stream: Stream
     feed: Feed
+    start_above: float = 0.0
+    stop_above: float = 0.0
 
     def coupling(self, slope: Floats, *, flow: Flow) -> Coupling:
         """Conductance from the mean plate to the fed temperature at a given slope of the loss.
@@ -243,7 +245,7 @@ def solve_stagnation(network: Network, around: Surroundings, absorbed: Absorbed)
     """
     loosely = 2.0 + network.u_back + network.u_edge + (0.0 if network.gaps else around.h_wind)
     t_plate = around.t_air + np.minimum(absorbed.plate / loosely, 120.0)
-    first = _first_guess(network, around, t_plate=t_plate)
+    first = first_guess(network, around, t_plate=t_plate)
     return _solve(network, around, absorbed, nodes=first, uptake=None, t_mean=t_plate)
 
 
@@ -269,7 +271,7 @@ def solve_running(network: Network, around: Surroundings, absorbed: Absorbed, *,
     useful = absorbed.plate - loss * (feed - around.t_air)
     t_plate = feed + useful / (conductance + loss)
     t_mean = feed + (0.45 / flow.capacity_rate) * np.maximum(useful, 0.0)
-    first = _first_guess(network, around, t_plate=t_plate)
+    first = first_guess(network, around, t_plate=t_plate)
     return _solve(network, around, absorbed, nodes=first, uptake=uptake, t_mean=t_mean)
 
 
@@ -304,7 +306,7 @@ def operate(network: Network, around: Surroundings, absorbed: Absorbed, *, uptak
     return state.at(gains), on
 
 
-def _first_guess(network: Network, around: Surroundings, *, t_plate: Floats) -> Floats:
+def first_guess(network: Network, around: Surroundings, *, t_plate: Floats) -> Floats:
     covers = len(network.gaps)
     inward = (np.arange(covers + 1) + 0.4) / (covers + 0.4)
     return np.asarray(around.t_air + np.outer(np.minimum(inward, 1.0), t_plate - around.t_air))

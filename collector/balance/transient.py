@@ -1,0 +1,400 @@
+"""Heat balance of every hour with heat held: one lumped node that drifts, is cooled by the fluid, and stores."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any, NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.linalg.lapack import dtbtrs
+
+from collector.balance.losses import Facing, Losses, Network, Step, Surroundings, newton_step
+from collector.balance.optics import Absorbed
+from collector.balance.steady import LONGEST_STEP, SETTLED, SOLVED, Flow, Uptake, first_guess
+from weather.year import Floats, Mask
+
+__all__ = ["Drift", "solve_drift"]
+
+HOUR = 3600.0  # s
+EXACT = 5e-9  # K, of every mean and end temperature: times the conductances, far below the audit's limit
+MOST_ITERATIONS = 60
+FITTED = (
+    0.05  # K, a part's move below which its exponential stays as it is; at a kink of a relation it would flip for ever
+)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Drift:
+    """Solved hours with heat held, each ``(n,)``; fluxes are means over the hour.
+
+    Parameters
+    ----------
+    t_end, t_plate
+        Plate temperature at the hour's end, and its mean over the hour [K].
+    t_cover
+        Mean of the outermost face, which is the plate itself where there is no cover [K].
+    useful
+        Heat taken away by the fluid [W/m2].
+    running
+        Share of the hour in which the pump runs.
+    losses
+        Leaving the plate while the pump runs [W/m2].
+    idle
+        Lost while it stands still [W/m2].
+    stored
+        Taken up by the collector itself [W/m2].
+    t_mean, t_outlet
+        Fluid, while the pump runs [K]; the plate's own in hours without.
+    residual
+        Imbalance of the hour, covers included [W/m2].
+    converged
+        Whether the hour is solved.
+    """
+
+    t_end: Floats
+    t_plate: Floats
+    t_cover: Floats
+    useful: Floats
+    running: Floats
+    losses: Losses
+    idle: Floats
+    stored: Floats
+    t_mean: Floats
+    t_outlet: Floats
+    residual: Floats
+    converged: Mask
+
+
+Hours = NDArray[np.intp]
+
+
+@dataclass(kw_only=True)
+class _Memory:
+    """What is known of each hour in one state of the pump; kept while the hour is in the other.
+
+    Parameters
+    ----------
+    nodes
+        ``(covers + 1, n)`` [K].
+    fall
+        Of the plate's net gain per kelvin, which shapes its course, ``(n,)``; NaN until first taken [W/m2K].
+    """
+
+    nodes: Floats
+    fall: Floats
+
+
+class _Line(NamedTuple):
+    """Net gain of the plate [W/m2] at temperature ``t`` [K], linear, with the network and the fluid that it was taken from."""
+
+    t: Floats
+    net: Floats
+    fall: Floats
+    step: Step
+    drawn: Floats
+    t_mean: Floats
+    t_outlet: Floats
+
+    def at(self, t: Floats) -> Floats:
+        """Net gain at another temperature."""
+        return self.net - self.fall * (t - self.t)
+
+
+class _Part(NamedTuple):
+    """Part of some ``hours`` in one state of the pump: its ``share`` of the hour, ``nodes`` ``(covers + 1, n)``, start, end and mean [K].
+
+    ``by_start``: move of the end, or where the part is cut at the fed temperature of its share, per kelvin of the start;
+    ``mean_by_start``: of the mean.
+    """
+
+    hours: Hours
+    on: Mask
+    nodes: Floats
+    line: _Line
+    share: Floats
+    start: Floats
+    end: Floats
+    mean: Floats
+    by_start: Floats
+    mean_by_start: Floats
+
+    @property
+    def moves(self) -> Floats:
+        """Moves of all nodes that bring the part to its mean, ``(covers + 1, n)`` [K]."""
+        return self.line.step.move(plate=self.mean - self.line.t)
+
+
+def solve_drift(
+    network: Network, around: Surroundings, absorbed: Absorbed, *, capacity: float, uptake: Uptake
+) -> Drift:
+    """Solve all hours of a year at once, the plate's heat carried from each to the next.
+
+    Within an hour everything outside is constant. The mean temperature stands between start and end where an exponential would
+    have it; what is stored is the net gain at that mean, so that energy closes whatever the shape. The pump runs while the plate
+    is warmer than the fed temperature; an hour in which it gets there, or falls below, has two parts, one in each state. The
+    hours' end temperatures are the unknowns of one Newton iteration, whose matrix has one diagonal beside the main one.
+
+    Parameters
+    ----------
+    network, around, absorbed
+        Collector, what it faces and the sun it absorbs, n hours.
+    capacity
+        Heat held per kelvin of the plate, above 0 [J/m2K].
+    uptake
+        Tubes, stream and fed temperature.
+
+    Returns
+    -------
+    Drift
+        n hours. The year begins at the temperature it ends with.
+
+    Notes
+    -----
+    **Source**: one lumped node, Duffie & Beckman, Sec. 6.12; exponential fitting after Liniger & Willoughby, SIAM J. Numer.
+    Anal. 7 (1970) 47 (from memory). Held against a stiff integrator on an independent scalar solution by
+    ``tests/test_transient.py``.
+    """
+    model = _Model(network, network.facing(around), absorbed, uptake, capacity / HOUR)
+    memories, flow = model.guess(around)
+    ran = np.zeros(len(absorbed.plate), dtype=bool)
+    ends = np.minimum(memories[0].nodes[-1], memories[1].nodes[-1])
+    first: _Part | None = None
+    for iteration in range(MOST_ITERATIONS):
+        first = model.first(memories, start=np.roll(ends, 1), ran=np.roll(ran, 1), flow=flow, known=first)
+        second = model.second(memories, first, flow=flow)
+        end, by_start, ran = _joined(first, second)
+        missed = end - ends
+        if max(np.abs(moves).max(initial=0.0) for moves in (missed, first.moves, second.moves)) < EXACT:
+            break
+        shift = np.clip(_carried(missed, by_start), -LONGEST_STEP, LONGEST_STEP)
+        _remember(memories, first, second, moved=np.roll(shift, 1))
+        if iteration < SETTLED and uptake.feed.at_inlet:
+            for part in (first, second):
+                flow[:, part.hours[part.on]] = uptake.stream.at(part.line.t_mean[part.on])
+        ends = ends + shift
+    return _drift(first, second, absorbed, end=end, rate=model.rate)
+
+
+class _Model(NamedTuple):
+    """What is solved; heat held per kelvin and hour as ``rate`` [W/m2K]."""
+
+    network: Network
+    facing: Facing
+    absorbed: Absorbed
+    uptake: Uptake
+    rate: float
+
+    @property
+    def feed(self) -> float:
+        """The fed temperature [K]."""
+        return self.uptake.feed.temperature
+
+    @property
+    def starts(self) -> float:
+        """Plate temperature at which the pump starts [K]."""
+        return self.feed + self.uptake.start_above
+
+    @property
+    def stops(self) -> float:
+        """Plate temperature at which the pump stops [K]."""
+        return self.feed + self.uptake.stop_above
+
+    def guess(self, around: Surroundings) -> tuple[tuple[_Memory, _Memory], Floats]:
+        """Standing near balance but not above the feed; running a little above it; film and heat capacity flow at the feed."""
+        network, sun = self.network, self.absorbed.plate
+        loss = 3.0 + network.u_back + network.u_edge + (0.0 if network.gaps else float(around.h_wind.mean()))
+        alone = around.t_air + sun / loss
+        above = 0.02 * loss * np.maximum(alone - self.feed, 0.0)
+        standing, running = (
+            _Memory(
+                nodes=first_guess(network, around, t_plate=t_plate),
+                fall=np.full_like(sun, np.nan),
+            )
+            for t_plate in (np.minimum(alone, self.feed), self.feed + above)
+        )
+        standing.nodes[-1] += np.where(alone > self.feed, above, 0.0)
+        return (standing, running), np.array(self.uptake.stream.at(np.full_like(sun, self.feed)))
+
+    def first(
+        self, memories: tuple[_Memory, _Memory], *, start: Floats, ran: Mask, flow: Floats, known: _Part | None
+    ) -> _Part:
+        """The part that begins every hour, cut where the pump starts or stops; what stayed as known is not taken again."""
+        on = (start > self.starts) | (ran & (start > self.stops))
+        hours = np.arange(on.size)
+        nodes = np.where(on, memories[1].nodes, memories[0].nodes)
+        fall = np.where(on, memories[1].fall, memories[0].fall)
+        line = (
+            self._line(hours, on, nodes=nodes, flow=flow)
+            if known is None
+            else self._renewed(known, on, nodes=nodes, flow=flow)
+        )
+        weight = _weight(np.where(np.isnan(fall), line.fall, fall) / self.rate)
+        damping = 1.0 + weight * line.fall / self.rate
+        gain, way = line.at(start), np.where(on, self.stops, self.starts) - start
+        rise = gain / self.rate / damping
+        by_start, mean_by_start = 1.0 - line.fall / self.rate / damping, 1.0 / damping
+        share = np.ones_like(start)
+        cut = (rise > way) != on
+        share[cut], weight[cut], by_start[cut] = _cut(line, cut, gain=gain, way=way, rate=self.rate)
+        rise[cut], mean_by_start[cut] = way[cut], 1.0 - weight[cut]
+        return _Part(hours, on, nodes, line, share, start, start + rise, start + weight * rise, by_start, mean_by_start)
+
+    def second(self, memories: tuple[_Memory, _Memory], first: _Part, *, flow: Floats) -> _Part:
+        """The part that ends an hour which has two, in the other state of the pump.
+
+        Where the pump would start and stop again and again, the plate stays between, and the fluid takes all that is gained.
+        """
+        hours = np.flatnonzero(first.share < 1.0)
+        on = ~first.on[hours]
+        nodes = np.where(on, memories[1].nodes[:, hours], memories[0].nodes[:, hours])
+        fall = np.where(on, memories[1].fall[hours], memories[0].fall[hours])
+        line = self._line(hours, on, nodes=nodes, flow=flow)
+        share = 1.0 - first.share[hours]
+        time = share / self.rate
+        weight = _weight(np.where(np.isnan(fall), line.fall, fall) * time)
+        damping = 1.0 + weight * line.fall * time
+        start = first.end[hours]
+        gain = line.at(start)
+        rise = time * gain / damping
+        by_start = -first.by_start[hours] / self.rate * gain / damping**2
+        end, mean = start + rise, start + weight * rise
+        if self.starts > self.stops:
+            balance = line.t + line.net / line.fall
+            cycles = np.where(on, balance < self.stops, balance > self.starts)
+            between = 0.5 * (self.starts + self.stops)
+            line = line._replace(drawn=np.where(cycles, line.drawn + line.net, line.drawn))
+            end, mean = np.where(cycles, start, end), np.where(cycles, between, mean)
+            by_start, on = np.where(cycles, 0.0, by_start), on | cycles
+        return _Part(hours, on, nodes, line, share, start, end, mean, by_start, np.zeros(hours.size))
+
+    def _renewed(self, known: _Part, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
+        """The known line, taken again in the hours whose nodes have moved or whose pump has turned."""
+        hours = np.flatnonzero((nodes != known.nodes).any(axis=0) | (on != known.on))
+        if hours.size > 0.7 * on.size:
+            return self._line(np.arange(on.size), on, nodes=nodes, flow=flow)
+        line: _Line = _put(known.line, self._line(hours, on[hours], nodes=nodes[:, hours], flow=flow), hours)
+        return line
+
+    def _line(self, hours: Hours, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
+        sun = self.absorbed.at(hours)
+        step = newton_step(self.network, self.facing.at(hours), sun_on_covers=sun.covers, nodes=nodes)
+        t_plate, here = nodes[-1], Flow(*flow[:, hours[on]])
+        coupling = self.uptake.coupling(step.slope[on], flow=here)
+        useful = self.uptake.useful(coupling, t_plate=t_plate[on])
+        conductance, drawn, t_mean, t_outlet = np.zeros(on.size), np.zeros(on.size), t_plate.copy(), t_plate.copy()
+        conductance[on], drawn[on] = coupling.conductance, useful
+        t_mean[on] = self.uptake.mean(coupling, t_plate=t_plate[on], useful=useful)
+        t_outlet[on] = self.uptake.outlet(flow=here, useful=useful)
+        return _Line(
+            t=t_plate,
+            net=sun.plate - step.loss - drawn,
+            fall=step.slope + conductance,
+            step=step,
+            drawn=drawn,
+            t_mean=t_mean,
+            t_outlet=t_outlet,
+        )
+
+
+def _put(whole: Any, part: Any, hours: Hours) -> Any:
+    """Return some hours of arrays, however nested in tuples and lists, put in their places in a copy of the whole."""
+    if isinstance(whole, np.ndarray):
+        merged = whole.copy()
+        merged[..., hours] = part
+        return merged
+    inner = [_put(one, other, hours) for one, other in zip(whole, part, strict=True)]
+    return type(whole)(*inner) if isinstance(whole, tuple) else inner
+
+
+def _cut(line: _Line, cut: Mask, *, gain: Floats, way: Floats, rate: float) -> tuple[Floats, Floats, Floats]:
+    """Parts that go all the way to the fed temperature: their share of the hour, mean's weight, and the share's move per kelvin.
+
+    By the exponential from the start, where the net gain is ``gain``, to the fed temperature, where it is what is left of it.
+    """
+    fall, here, far = line.fall[cut], gain[cut], way[cut]
+    left = np.maximum((here - fall * far) / here, 1e-12)
+    x = -np.log(left)
+    share = x * rate / fall
+    within = share < 1.0
+    by_start = np.where(within, -rate / here, 0.0)
+    return np.minimum(share, 1.0 - 1e-12), _weight(x), by_start
+
+
+def _weight(x: Floats) -> Floats:
+    """Where an exponential's mean stands between start and end: at half for a straight course, near the end for a quick one."""
+    x = np.clip(x, 1e-3, 500.0)
+    return -1.0 / np.expm1(-x) - 1.0 / x
+
+
+def _carried(missed: Floats, by_start: Floats) -> Floats:
+    """Moves of the ends that make each hour begin where the one before it ends: a unit triangle of two diagonals."""
+    bands = np.array([np.ones_like(missed), -np.roll(by_start, -1)])
+    shift, _ = dtbtrs(bands, missed, uplo="L", diag="U")
+    return np.asarray(shift)
+
+
+def _joined(first: _Part, second: _Part) -> tuple[Floats, Floats, Mask]:
+    """End temperature of every hour, its move per kelvin of the start, and whether the pump runs then."""
+    end, by_start, ran = first.end.copy(), first.by_start.copy(), first.on.copy()
+    end[second.hours], by_start[second.hours], ran[second.hours] = second.end, second.by_start, second.on
+    return end, by_start, ran
+
+
+def _remember(memories: tuple[_Memory, _Memory], first: _Part, second: _Part, *, moved: Floats) -> None:
+    """Move each part's nodes to its mean, for the start as it has moved; keep what shapes its course while that still moves."""
+    nodes, fall = _moved(first, memories, moved=moved)
+    for memory, here in zip(memories, (~first.on, first.on), strict=True):
+        memory.nodes = np.where(here, nodes, memory.nodes)
+        memory.fall = np.where(here, fall, memory.fall)
+    nodes, fall = _moved(second, memories, moved=np.zeros(second.hours.size))
+    for memory, here in zip(memories, (~second.on, second.on), strict=True):
+        memory.nodes[:, second.hours[here]] = nodes[:, here]
+        memory.fall[second.hours[here]] = fall[here]
+
+
+def _moved(part: _Part, memories: tuple[_Memory, _Memory], *, moved: Floats) -> tuple[Floats, Floats]:
+    """A part's nodes at its mean, left alone where they are there already, and what shapes its course."""
+    moves = part.line.step.move(plate=part.mean + part.mean_by_start * moved - part.line.t)
+    largest = np.abs(moves).max(axis=0)
+    moves = np.where(largest < 0.1 * EXACT, 0.0, np.clip(moves, -LONGEST_STEP, LONGEST_STEP))
+    known = np.where(part.on, memories[1].fall[part.hours], memories[0].fall[part.hours])
+    return part.nodes + moves, np.where((largest > FITTED) | np.isnan(known), part.line.fall, known)
+
+
+def _drift(first: _Part, second: _Part, absorbed: Absorbed, *, end: Floats, rate: float) -> Drift:
+    """Hours put together of their parts, each balance taken afresh."""
+    parts = (first, second)
+
+    def summed(values: tuple[Floats, Floats]) -> Floats:
+        whole = first.share * values[0]
+        whole[second.hours] += second.share * values[1]
+        return whole
+
+    useful = summed((first.line.drawn, second.line.drawn))
+    paths = zip(first.line.step.losses[:4], second.line.step.losses[:4], strict=True)
+    convection, radiation, back, edge = (summed((a * first.on, b * second.on)) for a, b in paths)
+    running = Losses(convection, radiation, back, edge, np.zeros((0, end.size)))
+    totals = (first.line.step.losses.total * ~first.on, second.line.step.losses.total * ~second.on)
+    idle, stored = summed(totals), rate * (end - first.start)
+    t_mean, t_outlet = first.line.t_mean.copy(), first.line.t_outlet.copy()
+    residual = np.abs(absorbed.plate - useful - running.total - idle - stored)
+    for part in parts:
+        hours = part.hours[part.on]
+        t_mean[hours], t_outlet[hours] = part.line.t_mean[part.on], part.line.t_outlet[part.on]
+        open_covers = np.abs(part.line.step.losses.cover_residual).max(axis=0, initial=0.0)
+        residual[part.hours] = np.maximum(residual[part.hours], open_covers)
+    return Drift(
+        t_end=end,
+        t_plate=summed((first.mean, second.mean)),
+        t_cover=summed((first.nodes[0], second.nodes[0])),
+        useful=useful,
+        running=summed((first.on.astype(float), second.on.astype(float))),
+        losses=running,
+        idle=idle,
+        stored=stored,
+        t_mean=t_mean,
+        t_outlet=t_outlet,
+        residual=residual,
+        converged=residual < SOLVED,
+    )
