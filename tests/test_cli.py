@@ -20,6 +20,7 @@ from collector.build.scenario import CHOICES, Scenario
 from collector.cli import VERSION, main
 from collector.physics.fluids import FLUIDS
 from collector.show import files as show_files
+from collector.show.tables import PATHS, year_text
 from collector.study.account import HOUR_COLUMNS
 
 ROOT = Path(__file__).parents[1]
@@ -144,7 +145,8 @@ def test_year_closes(years, name):
         assert absorbed == pytest.approx(useful + lost + account["idle_kWh_m2"] + account["stored_kWh_m2"], rel=1e-9)
         for key in MONTH_KEYS[1:4]:
             assert sum(month[key] for month in account["months"]) == pytest.approx(account[key], rel=1e-9)
-        assert sum(month["hours_on"] for month in account["months"]) == account["hours_on"]
+        running = sum(month["hours_on"] for month in account["months"])
+        assert abs(running - account["hours_on"]) <= 0.5  # the year's is given in whole hours
         assert account["useful_kWh"] == pytest.approx(useful * account["area_m2"], rel=1e-12)
         assert account["residual_max_W_m2"] < 1e-6
         assert account["unconverged_hours"] == 0
@@ -203,13 +205,13 @@ def _account(path: Path) -> dict:
     return told(run("year", path, "--json"))["runs"][0]
 
 
-@pytest.mark.parametrize("name", ["laundry", "pool"])
-def test_year_text_gives_the_heat_one_number(years, name, request):
-    if name == "pool":
-        reason = "product fault: the table rounds the heat so that its rows add up, the headline does not"
-        request.applymarker(pytest.mark.xfail(strict=True, reason=reason))
-    text = years[name][0].stdout
+@pytest.mark.xfail(strict=True, reason="product fault: the table's rows are rounded to add up, the headline is not")
+def test_year_text_gives_the_heat_one_number(years):
+    (account,) = told(years["laundry"][1])["runs"]
+    # the parts' last digits make up three tenths, and the heat, with the largest rest, is the first to be raised
+    text = year_text(account | {key: 10.04 for key, _ in PATHS} | {"useful_kWh_m2": 500.049})
     headline = re.search(r"^Heat of the year +(\S+) kWh/m2", text, flags=re.MULTILINE)[1]
+    assert headline == "500.0"
     assert re.search(r"^  HEAT DELIVERED +(\S+) ", text, flags=re.MULTILINE)[1] == headline
 
 
@@ -303,7 +305,7 @@ def test_out_of_one_run(tmp_path, years):
     assert len(hours) == 8760
     assert hours[0]["time"].endswith("-01-01T00:30")
     assert sum(float(row["useful_W_m2"]) for row in hours) / 1e3 == pytest.approx(account["useful_kWh_m2"], rel=1e-6)
-    assert sum(float(row["running"]) for row in hours) == account["hours_on"]
+    assert abs(sum(float(row["running"]) for row in hours) - account["hours_on"]) <= 0.5  # given in whole hours
 
 
 def test_out_of_several_runs_is_numbered(tmp_path):

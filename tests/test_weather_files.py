@@ -689,6 +689,7 @@ def test_tmy2_marks_of_missing_values(of):
     notices = of(made.text).notices
     for name in TMY2_MISSING:
         assert f"{name}: 3 h missing, {FILLED}" in notices
+    assert not any("outside" in notice for notice in notices)  # a mark is no value, however large
 
 
 # --- stamps

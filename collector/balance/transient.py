@@ -10,61 +10,19 @@ from numpy.typing import NDArray
 from scipy.linalg.lapack import dtbtrs
 
 from collector.balance.losses import Facing, Losses, Network, Step, Surroundings, newton_step
+from collector.balance.operated import Operated
 from collector.balance.optics import Absorbed
 from collector.balance.steady import LONGEST_STEP, SETTLED, SOLVED, Flow, Uptake, first_guess
 from weather.year import Floats, Mask
 
-__all__ = ["Drift", "solve_drift"]
+__all__ = ["solve_drift"]
 
 HOUR = 3600.0  # s
-EXACT = 5e-9  # K, of every mean and end temperature: times the conductances, far below the audit's limit
+EXACT = 4e-7  # W/m2, of every part's balance and every hour's joint
 MOST_ITERATIONS = 60
 FITTED = (
-    0.05  # K, a part's move below which its exponential stays as it is; at a kink of a relation it would flip for ever
+    0.05  # K, a part's move below which its exponential stays as it is: at a relation's kink it would flip for ever
 )
-
-
-@dataclass(frozen=True, kw_only=True)
-class Drift:
-    """Solved hours with heat held, each ``(n,)``; fluxes are means over the hour.
-
-    Parameters
-    ----------
-    t_end, t_plate
-        Plate temperature at the hour's end, and its mean over the hour [K].
-    t_cover
-        Mean of the outermost face, which is the plate itself where there is no cover [K].
-    useful
-        Heat taken away by the fluid [W/m2].
-    running
-        Share of the hour in which the pump runs.
-    losses
-        Leaving the plate while the pump runs [W/m2].
-    idle
-        Lost while it stands still [W/m2].
-    stored
-        Taken up by the collector itself [W/m2].
-    t_mean, t_outlet
-        Fluid, while the pump runs [K]; the plate's own in hours without.
-    residual
-        Imbalance of the hour, covers included [W/m2].
-    converged
-        Whether the hour is solved.
-    """
-
-    t_end: Floats
-    t_plate: Floats
-    t_cover: Floats
-    useful: Floats
-    running: Floats
-    losses: Losses
-    idle: Floats
-    stored: Floats
-    t_mean: Floats
-    t_outlet: Floats
-    residual: Floats
-    converged: Mask
-
 
 Hours = NDArray[np.intp]
 
@@ -102,14 +60,16 @@ class _Line(NamedTuple):
 
 
 class _Part(NamedTuple):
-    """Part of some ``hours`` in one state of the pump: its ``share`` of the hour, ``nodes`` ``(covers + 1, n)``, start, end and mean [K].
+    """Part of some ``hours`` in one state of the pump: its ``share`` of the hour; ``nodes``, start, end and mean [K].
 
+    ``on``: whether it is taken with the pump on; ``runs``: whether it counts as running, as it does too where the pump cycles;
     ``by_start``: move of the end, or where the part is cut at the fed temperature of its share, per kelvin of the start;
     ``mean_by_start``: of the mean.
     """
 
     hours: Hours
     on: Mask
+    runs: Mask
     nodes: Floats
     line: _Line
     share: Floats
@@ -120,14 +80,15 @@ class _Part(NamedTuple):
     mean_by_start: Floats
 
     @property
-    def moves(self) -> Floats:
-        """Moves of all nodes that bring the part to its mean, ``(covers + 1, n)`` [K]."""
-        return self.line.step.move(plate=self.mean - self.line.t)
+    def open(self) -> Floats:
+        """How far the part's nodes are from its mean, as heat [W/m2]."""
+        moves = self.line.step.move(plate=self.mean - self.line.t)
+        return np.asarray(self.line.fall * np.abs(moves).max(axis=0))
 
 
 def solve_drift(
     network: Network, around: Surroundings, absorbed: Absorbed, *, capacity: float, uptake: Uptake
-) -> Drift:
+) -> Operated:
     """Solve all hours of a year at once, the plate's heat carried from each to the next.
 
     Within an hour everything outside is constant. The mean temperature stands between start and end where an exponential would
@@ -146,7 +107,7 @@ def solve_drift(
 
     Returns
     -------
-    Drift
+    Operated
         n hours. The year begins at the temperature it ends with.
 
     Notes
@@ -159,13 +120,13 @@ def solve_drift(
     memories, flow = model.guess(around)
     ran = np.zeros(len(absorbed.plate), dtype=bool)
     ends = np.minimum(memories[0].nodes[-1], memories[1].nodes[-1])
-    first: _Part | None = None
+    known: _Part | None = None
     for iteration in range(MOST_ITERATIONS):
-        first = model.first(memories, start=np.roll(ends, 1), ran=np.roll(ran, 1), flow=flow, known=first)
+        first = known = model.first(memories, start=np.roll(ends, 1), ran=np.roll(ran, 1), flow=flow, known=known)
         second = model.second(memories, first, flow=flow)
         end, by_start, ran = _joined(first, second)
         missed = end - ends
-        if max(np.abs(moves).max(initial=0.0) for moves in (missed, first.moves, second.moves)) < EXACT:
+        if max(model.rate * np.abs(missed).max(), first.open.max(), second.open.max(initial=0.0)) < EXACT:
             break
         shift = np.clip(_carried(missed, by_start), -LONGEST_STEP, LONGEST_STEP)
         _remember(memories, first, second, moved=np.roll(shift, 1))
@@ -238,7 +199,9 @@ class _Model(NamedTuple):
         cut = (rise > way) != on
         share[cut], weight[cut], by_start[cut] = _cut(line, cut, gain=gain, way=way, rate=self.rate)
         rise[cut], mean_by_start[cut] = way[cut], 1.0 - weight[cut]
-        return _Part(hours, on, nodes, line, share, start, start + rise, start + weight * rise, by_start, mean_by_start)
+        return _Part(
+            hours, on, on, nodes, line, share, start, start + rise, start + weight * rise, by_start, mean_by_start
+        )
 
     def second(self, memories: tuple[_Memory, _Memory], first: _Part, *, flow: Floats) -> _Part:
         """The part that ends an hour which has two, in the other state of the pump.
@@ -258,15 +221,15 @@ class _Model(NamedTuple):
         gain = line.at(start)
         rise = time * gain / damping
         by_start = -first.by_start[hours] / self.rate * gain / damping**2
-        end, mean = start + rise, start + weight * rise
+        end, mean, runs = start + rise, start + weight * rise, on
         if self.starts > self.stops:
             balance = line.t + line.net / line.fall
             cycles = np.where(on, balance < self.stops, balance > self.starts)
             between = 0.5 * (self.starts + self.stops)
             line = line._replace(drawn=np.where(cycles, line.drawn + line.net, line.drawn))
             end, mean = np.where(cycles, start, end), np.where(cycles, between, mean)
-            by_start, on = np.where(cycles, 0.0, by_start), on | cycles
-        return _Part(hours, on, nodes, line, share, start, end, mean, by_start, np.zeros(hours.size))
+            by_start, runs = np.where(cycles, 0.0, by_start), on | cycles
+        return _Part(hours, on, runs, nodes, line, share, start, end, mean, by_start, np.zeros(hours.size))
 
     def _renewed(self, known: _Part, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
         """The known line, taken again in the hours whose nodes have moved or whose pump has turned."""
@@ -277,8 +240,9 @@ class _Model(NamedTuple):
         return line
 
     def _line(self, hours: Hours, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
-        sun = self.absorbed.at(hours)
-        step = newton_step(self.network, self.facing.at(hours), sun_on_covers=sun.covers, nodes=nodes)
+        whole = hours.size == self.absorbed.plate.size
+        sun, facing = (self.absorbed, self.facing) if whole else (self.absorbed.at(hours), self.facing.at(hours))
+        step = newton_step(self.network, facing, sun_on_covers=sun.covers, nodes=nodes)
         t_plate, here = nodes[-1], Flow(*flow[:, hours[on]])
         coupling = self.uptake.coupling(step.slope[on], flow=here)
         useful = self.uptake.useful(coupling, t_plate=t_plate[on])
@@ -336,8 +300,8 @@ def _carried(missed: Floats, by_start: Floats) -> Floats:
 
 def _joined(first: _Part, second: _Part) -> tuple[Floats, Floats, Mask]:
     """End temperature of every hour, its move per kelvin of the start, and whether the pump runs then."""
-    end, by_start, ran = first.end.copy(), first.by_start.copy(), first.on.copy()
-    end[second.hours], by_start[second.hours], ran[second.hours] = second.end, second.by_start, second.on
+    end, by_start, ran = first.end.copy(), first.by_start.copy(), first.runs.copy()
+    end[second.hours], by_start[second.hours], ran[second.hours] = second.end, second.by_start, second.runs
     return end, by_start, ran
 
 
@@ -357,12 +321,12 @@ def _moved(part: _Part, memories: tuple[_Memory, _Memory], *, moved: Floats) -> 
     """A part's nodes at its mean, left alone where they are there already, and what shapes its course."""
     moves = part.line.step.move(plate=part.mean + part.mean_by_start * moved - part.line.t)
     largest = np.abs(moves).max(axis=0)
-    moves = np.where(largest < 0.1 * EXACT, 0.0, np.clip(moves, -LONGEST_STEP, LONGEST_STEP))
+    moves = np.where(largest * part.line.fall < 0.1 * EXACT, 0.0, np.clip(moves, -LONGEST_STEP, LONGEST_STEP))
     known = np.where(part.on, memories[1].fall[part.hours], memories[0].fall[part.hours])
     return part.nodes + moves, np.where((largest > FITTED) | np.isnan(known), part.line.fall, known)
 
 
-def _drift(first: _Part, second: _Part, absorbed: Absorbed, *, end: Floats, rate: float) -> Drift:
+def _drift(first: _Part, second: _Part, absorbed: Absorbed, *, end: Floats, rate: float) -> Operated:
     """Hours put together of their parts, each balance taken afresh."""
     parts = (first, second)
 
@@ -373,9 +337,9 @@ def _drift(first: _Part, second: _Part, absorbed: Absorbed, *, end: Floats, rate
 
     useful = summed((first.line.drawn, second.line.drawn))
     paths = zip(first.line.step.losses[:4], second.line.step.losses[:4], strict=True)
-    convection, radiation, back, edge = (summed((a * first.on, b * second.on)) for a, b in paths)
+    convection, radiation, back, edge = (summed((a * first.runs, b * second.runs)) for a, b in paths)
     running = Losses(convection, radiation, back, edge, np.zeros((0, end.size)))
-    totals = (first.line.step.losses.total * ~first.on, second.line.step.losses.total * ~second.on)
+    totals = (first.line.step.losses.total * ~first.runs, second.line.step.losses.total * ~second.runs)
     idle, stored = summed(totals), rate * (end - first.start)
     t_mean, t_outlet = first.line.t_mean.copy(), first.line.t_outlet.copy()
     residual = np.abs(absorbed.plate - useful - running.total - idle - stored)
@@ -384,12 +348,11 @@ def _drift(first: _Part, second: _Part, absorbed: Absorbed, *, end: Floats, rate
         t_mean[hours], t_outlet[hours] = part.line.t_mean[part.on], part.line.t_outlet[part.on]
         open_covers = np.abs(part.line.step.losses.cover_residual).max(axis=0, initial=0.0)
         residual[part.hours] = np.maximum(residual[part.hours], open_covers)
-    return Drift(
+    return Operated(
+        nodes=np.array([summed(pair) for pair in zip(first.nodes, second.nodes, strict=True)]),
         t_end=end,
-        t_plate=summed((first.mean, second.mean)),
-        t_cover=summed((first.nodes[0], second.nodes[0])),
         useful=useful,
-        running=summed((first.on.astype(float), second.on.astype(float))),
+        running=summed((first.runs.astype(float), second.runs.astype(float))),
         losses=running,
         idle=idle,
         stored=stored,

@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from collector.build.catalogue import entry
-from collector.build.scenario import AbsorberTable, CasingTable, CoverTable, Scenario
+from collector.build.scenario import AbsorberTable, CasingTable, CollectorTable, CoverTable, Scenario
 from collector.physics.glazing import slab_from_normal
 
-__all__ = ["Absorber", "Collector", "Cover", "collector_of"]
+__all__ = ["Absorber", "Collector", "Cover", "Materials", "collector_of"]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -60,6 +60,26 @@ class Absorber:
 
 
 @dataclass(frozen=True, kw_only=True)
+class Materials:
+    """Heat capacities, None where not known.
+
+    Parameters
+    ----------
+    plate
+        Of plate and tubes [J/m3K].
+    covers
+        Of each cover, outermost first [J/m2K].
+    back, edge
+        Of the insulation, per area of length x width [J/m2K].
+    """
+
+    plate: float | None = None
+    covers: tuple[float | None, ...] = ()
+    back: float | None = None
+    edge: float | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
 class Collector:
     """One module as built, mounted and fed, with the choices that belong to it.
 
@@ -83,6 +103,10 @@ class Collector:
         Whether diffuse light is integrated over the hemisphere, or taken at effective angles.
     whole_sky
         Whether the front radiates to the sky alone.
+    capacity
+        Heat held per kelvin, as given; None leaves it to the materials [J/m2K].
+    materials
+        What is known of them.
     """
 
     covers: tuple[Cover, ...]
@@ -98,6 +122,8 @@ class Collector:
     falling_absorptance: bool
     integrated_diffuse: bool
     whole_sky: bool
+    capacity: float | None = None
+    materials: Materials = Materials()
 
     @property
     def area(self) -> float:
@@ -134,6 +160,8 @@ def collector_of(scenario: Scenario) -> Collector:
         falling_absorptance=models.absorptance_angle == "flat-black",
         integrated_diffuse=models.diffuse == "integrated",
         whole_sky=models.longwave_view == "sky",
+        capacity=None if table.capacity_kJ_m2K is None else 1e3 * table.capacity_kJ_m2K,
+        materials=_materials(table),
     )
 
 
@@ -168,6 +196,29 @@ def _casing(table: CasingTable, *, length: float, width: float) -> tuple[float, 
     edge = _conductivity(table.edge_conductivity_W_mK, table.edge_insulation) / (table.edge_thickness_mm / 1e3)
     rim = 2.0 * (length + width) * table.edge_height_mm / 1e3
     return back, edge * rim / (length * width)
+
+
+def _materials(table: CollectorTable) -> Materials:
+    absorber, casing = table.absorber, table.casing
+    rim = 2.0 * (table.length_m + table.width_m) * casing.edge_height_mm / 1e3 / (table.length_m * table.width_m)
+    plate = _heat(absorber.heat_capacity_kJ_m3K, "metals", absorber.metal, key="heat_capacity_kJ_m3K")
+    back = _heat(casing.back_heat_capacity_kJ_m3K, "insulation", casing.back_insulation, key="heat_capacity_kJ_m3K")
+    edge = _heat(casing.edge_heat_capacity_kJ_m3K, "insulation", casing.edge_insulation, key="heat_capacity_kJ_m3K")
+    return Materials(
+        plate=plate,
+        covers=tuple(
+            _heat(cover.heat_capacity_kJ_m2K, "covers", cover.glass, key="heat_capacity_kJ_m2K")
+            for cover in table.cover
+        ),
+        back=None if back is None else back * casing.back_thickness_mm / 1e3,
+        edge=0.0 if rim == 0.0 else None if edge is None else edge * rim * casing.edge_thickness_mm / 1e3,
+    )
+
+
+def _heat(given: float | None, shelf: str, name: str | None, *, key: str) -> float | None:
+    """Heat capacity as given, or the catalogue's, per J instead of kJ."""
+    value = given if given is not None else entry(shelf, name=name)[key] if name else None
+    return None if value is None else 1e3 * float(value)
 
 
 def _conductivity(given: float | None, name: str | None) -> float:

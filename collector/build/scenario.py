@@ -128,6 +128,9 @@ class CoverTable(_Table):
         0.01, 1.0, "", doc="long wave, either face; the catalogue's if a glass is named", default=None
     )
     gap_mm: float = _quantity(1.0, 200.0, "mm", doc="gas layer beneath this cover")
+    heat_capacity_kJ_m2K: float | None = _quantity(
+        0.05, 100.0, "kJ/m2K", doc="of the cover; the glass's own", default=None
+    )
 
     @model_validator(mode="after")
     def _check(self) -> CoverTable:
@@ -155,6 +158,9 @@ class AbsorberTable(_Table):
     coating: str | None = Field(None, description="or: a coating of the catalogue")
     conductivity_W_mK: float | None = _quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)
     metal: str | None = Field(None, description="or: a plate material of the catalogue")
+    heat_capacity_kJ_m3K: float | None = _quantity(
+        100.0, 5e3, "kJ/m3K", doc="of plate and tubes; the metal's own", default=None
+    )
     thickness_mm: float = _quantity(0.05, 20.0, "mm", doc="of the plate")
     tube_pitch_mm: float = _quantity(3.0, 1000.0, "mm", doc="from tube to tube")
     tube_outer_mm: float = _quantity(2.0, 100.0, "mm", doc="outer diameter")
@@ -184,9 +190,11 @@ class CasingTable(_Table):
     back_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="behind the plate")
     back_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
     back_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
+    back_heat_capacity_kJ_m3K: float | None = _quantity(1.0, 5e3, "kJ/m3K", doc="the insulation's own", default=None)
     edge_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="around the edges")
     edge_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
     edge_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
+    edge_heat_capacity_kJ_m3K: float | None = _quantity(1.0, 5e3, "kJ/m3K", doc="the insulation's own", default=None)
     edge_height_mm: float = _quantity(0.0, 500.0, "mm", doc="of the edge that loses heat; 0 for none")
 
     @model_validator(mode="after")
@@ -204,6 +212,13 @@ class CollectorTable(_Table):
     modules: int = Field(ge=1, le=100_000, description="how many")
     length_m: float = _quantity(0.1, 30.0, "m", doc="along the tubes")
     width_m: float = _quantity(0.05, 30.0, "m", doc="across the tubes")
+    capacity_kJ_m2K: float | None = _quantity(
+        0.5,
+        200.0,
+        "kJ/m2K",
+        doc="heat held per kelvin of the plate; from the materials if absent and all are known",
+        default=None,
+    )
     gross_area_m2: float | None = _quantity(
         0.01, 1000.0, "m2", doc="of a module, where results per gross area are wanted", default=None
     )
@@ -264,9 +279,19 @@ class OperationTable(_Table):
         json_schema_extra={"unit": "C", "allowed": "a number or a list of numbers, each -50 to 200 C"},
     )
 
+    start_K: float | None = _quantity(
+        0.0, 50.0, "K", doc="plate above the fluid held at which the pump starts", default=None
+    )
+    stop_K: float | None = _quantity(
+        0.0, 50.0, "K", doc="plate above the fluid held at which the pump stops", default=None
+    )
+
     @model_validator(mode="after")
     def _check(self) -> OperationTable:
         self._one_of(RIVALS["operation"])
+        if (self.stop_K or 0.0) > (self.start_K or 0.0):
+            got, allowed = f"{self.stop_K:g} K", f"at most start_K, {self.start_K or 0.0:g} K"
+            raise _fault("the pump would stop before it starts", key="stop_K", allowed=allowed, got=got)
         return self
 
 

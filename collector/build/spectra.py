@@ -116,7 +116,8 @@ def read_index(path: Path) -> IndexTable:
     grid, values, said = _in_order(wavelength, columns.values[:, 1:], name=path.name, what="n or k")
     _enough(grid, path=path)
     index = np.asarray(values[:, 0] + 1j * values[:, 1], dtype=np.complex128)
-    return IndexTable(grid, index, (*columns.notices, unit, *said))
+    gaps = [f"{path.name}: {gap}" for gap in _gaps(grid)]
+    return IndexTable(grid, index, (*columns.notices, unit, *said, *gaps))
 
 
 class _Part(NamedTuple):

@@ -158,6 +158,7 @@ def _lines(text: str) -> dict[Key, int]:
         if match and match[1]:
             table = tuple(match[2].split("."))
             if table[0] == "layer":
+                found.setdefault(("layer",), number)
                 layers += match[1] == "[["
                 table = ("layer", layers - 1, *table[1:])
             found.setdefault(table, number)

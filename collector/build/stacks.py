@@ -106,8 +106,10 @@ def _grid(described: StackFile, *, tables: Mapping[str, IndexTable], path: Path)
     notices = [
         f"{name} holds {own}; of that {span}, common to all, is used" for name, own in spans.items() if own != span
     ]
-    optical = sum(layer.thickness_nm * 1e-9 * _steepest(layer, tables=tables) for layer in described.layer)
-    wanted = math.ceil(math.log(high / low) * POINTS_A_FRINGE * 2.0 * optical / low)
+    waves = sum(
+        layer.thickness_nm * 1e-9 * _waves_per_metre(layer, tables=tables, low=low) for layer in described.layer
+    )
+    wanted = math.ceil(math.log(high / low) * POINTS_A_FRINGE * 2.0 * waves)
     if wanted > MOST_POINTS:
         notices.append(f"films so thick that {wanted} points would follow their fringes; {MOST_POINTS} are used")
     even = np.geomspace(low, high, min(max(wanted, FEWEST_POINTS), MOST_POINTS)).clip(low, high)
@@ -115,10 +117,13 @@ def _grid(described: StackFile, *, tables: Mapping[str, IndexTable], path: Path)
     return np.unique(np.concatenate([even, *own])), notices
 
 
-def _steepest(layer: LayerTable, *, tables: Mapping[str, IndexTable]) -> float:
-    """Largest refractive index that a layer may have."""
+def _waves_per_metre(layer: LayerTable, *, tables: Mapping[str, IndexTable], low: float) -> float:
+    """Largest number of waves that a metre of a layer's material holds."""
+    if layer.n is not None:
+        return layer.n / low
     mixed = (layer.mixture.inclusion_csv, layer.mixture.host_csv) if layer.mixture else (layer.index_csv,)
-    return layer.n or max(float(tables[name].refractive_index.real.max()) for name in mixed if name is not None)
+    used = [tables[name] for name in mixed if name is not None]
+    return max(float((table.refractive_index.real / table.wavelength).max()) for table in used)
 
 
 def _interpolated(table: IndexTable, *, grid: Floats) -> Complexes:

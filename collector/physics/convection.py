@@ -116,7 +116,8 @@ def air(t: Floats, *, pressure: float) -> Air:
     -------
     Air
         Conductivity [W/mK] with its slope [W/mK2], and the Rayleigh number per kelvin and cubic metre,
-        g rho^2 cp / (T mu k) for an ideal gas [1/Km3], with the slope of its logarithm [1/K].
+        g rho^2 cp / (T mu k) for an ideal gas [1/Km3], with the slope of its logarithm [1/K]; within 0.5 % of real air from
+        260 to 400 K, 1.4 % below it at 200 K.
     """
     x = t / 300.0
     k, mu, cp = air_conductivity(t), air_viscosity(t), air_heat_capacity(t)

@@ -4,7 +4,7 @@ Water: IAPWS-IF97 (2007) Table 2, IAPWS R12-08 Tables 1 and 2, IAPWS R15-11 Tabl
 
 Glycols: Melinder, Properties of Secondary Working Fluids for Indirect Systems, IIR (2010), in the bivariate polynomials
 that the open library CoolProp 8.0 carries, moved here to the base ((x - 0.3)/0.3, (t - 323.15 K)/50 K); rows are powers of
-the first, columns of the second. They give back that library's values to 5e-9.
+the first, columns of the second. They give back that library's values to 1e-8.
 """
 
 from __future__ import annotations

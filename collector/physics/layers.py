@@ -173,7 +173,8 @@ def hemispherical_of_normal(eps_normal: Floats) -> tuple[Floats, Mask]:
     Returns
     -------
     tuple
-        Hemispherical emittance, and where no such metal exists (above 0.82) and the ratio at 0.82 is held.
+        Hemispherical emittance, and where the normal one, above 0.50, is no bare metal's and is handed back unchanged. At
+        0.50 the ratio has come down to 1.
 
     Notes
     -----
@@ -181,7 +182,7 @@ def hemispherical_of_normal(eps_normal: Floats) -> tuple[Floats, Mask]:
     """
     normal, ratio = _metal_ratio()
     given = np.asarray(eps_normal, dtype=float)
-    return np.minimum(given * np.interp(given, normal, ratio), 1.0), given > normal[-1]
+    return given * np.interp(given, normal, np.maximum(ratio, 1.0)), given > normal[ratio >= 1.0][-1]
 
 
 @cache

@@ -108,7 +108,7 @@ def solar_absorptance(spectrum: Spectrum, *, wavelength: Floats, irradiance: Flo
         float(part / whole) for part in (taken.sum(), energy[grid[1:] <= first].sum(), energy[grid[:-1] >= last].sum())
     )
     least = value - short * float(spectrum.absorptance[0]) - long * float(spectrum.absorptance[-1])
-    return Absorbed(value, short, long, least, least + short + long)
+    return Absorbed(value, short, long, max(least, 0.0), min(least + short + long, 1.0))
 
 
 def band_fraction(lambda_t: Floats) -> Floats:
@@ -130,7 +130,7 @@ def band_fraction(lambda_t: Floats) -> Floats:
     Bernoulli's numbers, for long wavelengths: Siegel & Howell, Thermal Radiation Heat Transfer, Appendix A (both from
     memory). The two meet to 1e-12.
     """
-    return np.asarray(_tail(lambda_t, power=3) * (15.0 / math.pi**4))
+    return np.minimum(_tail(lambda_t, power=3) * (15.0 / math.pi**4), 1.0)
 
 
 def _tail(lambda_t: Floats, *, power: int) -> Floats:
@@ -185,11 +185,11 @@ def emittance(spectrum: Spectrum, *, t: Floats) -> Radiated:
     **Source**: definition, e.g. Siegel & Howell, Thermal Radiation Heat Transfer, Ch. 3; closed form of the segments our own.
     """
     a, temperature = spectrum.absorptance, np.asarray(t, dtype=float)
-    value = a[-1] - _mean_fraction(spectrum.wavelength, t=temperature) @ np.diff(a)
+    value = np.clip(a[-1] - _mean_fraction(spectrum.wavelength, t=temperature) @ np.diff(a), a.min(), a.max())
     short = band_fraction(spectrum.wavelength[0] * temperature)
     long = 1.0 - band_fraction(spectrum.wavelength[-1] * temperature)
     least = value - short * a[0] - long * a[-1]
-    return Radiated(value, short, long, least, least + short + long)
+    return Radiated(value, short, long, np.maximum(least, 0.0), np.minimum(least + short + long, 1.0))
 
 
 def _mean_fraction(wavelength: Floats, *, t: Floats) -> Floats:

@@ -23,17 +23,18 @@ WIDTH = 80
 MONTHS = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
 PATHS = (  # where the sunlight went, in the order of its way through the collector
     ("optical_kWh_m2", "not absorbed by the plate (reflected, cover)"),
-    ("idle_kWh_m2", "absorbed while the pump stands still"),
+    ("idle_kWh_m2", "lost while the pump stands still"),
     ("top_convection_kWh_m2", "lost through the front by convection"),
     ("top_radiation_kWh_m2", "lost through the front by radiation"),
     ("back_kWh_m2", "lost through the back"),
     ("edge_kWh_m2", "lost through the edges"),
-    ("stored_kWh_m2", "left in the collector"),
+    ("stored_kWh_m2", "left in the collector at the year's end"),
     ("useful_kWh_m2", "HEAT DELIVERED"),
 )
 SHORTER = {
     "optical_kWh_m2": "not absorbed by the plate",
-    "idle_kWh_m2": "absorbed while standing still",
+    "idle_kWh_m2": "lost while standing still",
+    "stored_kWh_m2": "left at the year's end",
     "top_convection_kWh_m2": "lost in front by convection",
     "top_radiation_kWh_m2": "lost in front by radiation",
 }
@@ -158,7 +159,7 @@ def _month_table(run: RUN) -> list[str]:
         plane, heat = month["plane_kWh_m2"], month["useful_kWh_m2"]
         share = f"{100.0 * heat / plane:8.1f}" if plane > 0.0 else "       -"
         bar = "#" * round(26 * heat / longest)
-        lines.append(f"{name:<6} {plane:9.1f} {heat:8.1f}     {share}   {month['hours_on']:7d}   {bar}".rstrip())
+        lines.append(f"{name:<6} {plane:9.1f} {heat:8.1f}     {share}   {month['hours_on']:7.0f}   {bar}".rstrip())
     return lines
 
 
@@ -210,9 +211,21 @@ def _basis(run: RUN) -> list[str]:
         "wind": f"{weather['wind']}, mean {weather['wind_mean_m_s']:.1f} m/s",
         "ground": f"albedo {weather['albedo'] if isinstance(weather['albedo'], str) else format(weather['albedo'], 'g')}",
         "relations": ", ".join(f"{step} {name}" for step, name in models.items() if not isinstance(name, bool)),
-        "not included": "heat held by the collector warming and cooling; pipes; shading; dirt",
+        "heat held": _heat_held(run["heat_held"]),
+        "not included": "pipes; stores; shading; dirt; snow",
     }
     return ["What it rests on", *(line for name, words in rows.items() for line in _hung(words, head=f"  {name:<13}"))]
+
+
+def _heat_held(held: RUN) -> str:
+    if held["capacity_kJ_m2K"] is None:
+        return "not counted: give collector.capacity_kJ_m2K, or materials whose heat capacity is known"
+    words = f"{held['capacity_kJ_m2K']:.1f} kJ/m2K from {held['from']}"
+    return (
+        words
+        if held["warming_up_kWh_m2"] is None
+        else f"{words}; warming up cost {held['warming_up_kWh_m2']:.1f} kWh/m2"
+    )
 
 
 def _stamps(weather: RUN) -> str:

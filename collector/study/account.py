@@ -9,9 +9,12 @@ from typing import Any, NamedTuple
 import numpy as np
 from scipy.constants import zero_Celsius
 
+from collector.balance.capacity import held_heat
+from collector.balance.losses import Network, network_of
+from collector.balance.operated import Operated
 from collector.balance.optics import optics_of
 from collector.balance.steady import SteadyState
-from collector.build.collector import collector_of
+from collector.build.collector import Collector, collector_of
 from collector.build.scenario import CHOICES, Scenario
 from collector.study.cautions import cautions_of
 from collector.study.notices import notices_of
@@ -24,16 +27,17 @@ __all__ = ["HOUR_COLUMNS", "Run", "hours_table", "inspected", "runs_of"]
 HOTTEST = 5
 CLOSED = 1e-6  # W/m2 of an hour, kWh/m2 of the year
 HOUR_COLUMNS = (
-    "time", "plane_W_m2", "absorbed_W_m2", "useful_W_m2", "top_convection_W_m2", "top_radiation_W_m2", "back_W_m2",
-    "edge_W_m2", "running", "plate_C", "cover_C", "inlet_C", "mean_C", "outlet_C", "plate_if_stopped_C", "air_C", "sky_C",
-    "wind_W_m2K", "residual_W_m2",
+    "time", "plane_W_m2", "absorbed_W_m2", "useful_W_m2", "top_convection_W_m2", "top_radiation_W_m2", "back_W_m2", "edge_W_m2",
+    "idle_W_m2", "stored_W_m2", "running", "plate_C", "cover_C", "inlet_C", "mean_C", "outlet_C", "plate_if_stopped_C", "air_C",
+    "sky_C", "wind_W_m2K", "residual_W_m2",
 )  # fmt: skip
 
 
 class Run(NamedTuple):
-    """One scenario at one temperature: the year solved, every hour with the pump stopped, and the account in plain numbers."""
+    """One scenario at one temperature: the year solved, its hours as operated and with the pump stopped, and the account."""
 
     year: HeatYear
+    hours: Operated
     still: SteadyState
     account: dict[str, Any]
 
@@ -62,10 +66,16 @@ def runs_of(scenario: Scenario, *, base: Path) -> list[Run]:
     years = heat_years(scenario, weather=weather)
     spreads = alternatives(scenario, weather=weather)
     still = standing(years[0].conditions)
-    return [
-        Run(year, still, _account(year, scenario, still=still, spread=spread))
-        for year, spread in zip(years, spreads, strict=True)
-    ]
+    steady = heat_years(scenario, weather=weather, held=False) if years[0].drift else years
+    runs = []
+    for year, without, spread in zip(years, steady, spreads, strict=True):
+        hours = year.operated(still)
+        account = _account(year, scenario, hours=hours, still=still) | {
+            "heat_held": _heat_held(year, without),
+            "how_sure": _how_sure(year, spread),
+        }
+        runs.append(Run(year, hours, still, account))
+    return runs
 
 
 def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
@@ -95,6 +105,7 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         "normal_absorptance_covers": covers,
         "U_back_W_m2K": collector.u_back,
         "U_edge_W_m2K": collector.u_edge,
+        "heat_held": _capacity(collector, network_of(collector, pressure=weather.pressure)),
         "weather": _weather(weather, scenario),
         "models": _models(scenario),
         "notices": list(weather.notices),
@@ -106,28 +117,43 @@ def _models(scenario: Scenario) -> dict[str, Any]:
     return names | {"sky_pressure_term": scenario.models.sky_pressure_term}
 
 
-def _account(
-    year: HeatYear, scenario: Scenario, *, still: SteadyState, spread: Iterable[Alternative]
-) -> dict[str, Any]:
-    hours = still.replaced(year.on, year.running)
+def _account(year: HeatYear, scenario: Scenario, *, hours: Operated, still: SteadyState) -> dict[str, Any]:
+    feed = year.uptake.feed
     return {
         "title": scenario.title,
-        "inlet_C" if year.feed.at_inlet else "mean_C": _tidy(year.feed.temperature - zero_Celsius),
-        **_sums(year),
+        "inlet_C" if feed.at_inlet else "mean_C": _tidy(feed.temperature - zero_Celsius),
+        **_sums(year.conditions, hours),
         **_sizes(year, scenario),
-        "hours_on": int(np.count_nonzero(year.on)),
+        "hours_on": round(float(hours.running.sum())),
         "hottest_plate_C": float(hours.t_plate.max()) - zero_Celsius,
         "stagnation_plate_C": float(still.t_plate.max()) - zero_Celsius,
         "hottest_hours": _hottest(year.conditions, still),
         "residual_max_W_m2": float(max(hours.residual.max(), still.residual.max())),
         "unconverged_hours": int(np.count_nonzero(~hours.converged | ~still.converged)),
-        "months": _months(year),
-        "how_sure": _how_sure(year, spread),
+        "months": _months(year.conditions, hours),
         "weather": _weather(year.conditions.weather, scenario),
         "models": _models(scenario),
-        "notices": notices_of(year, scenario, still=still),
-        "cautions": cautions_of(year, scenario, still=still),
+        "notices": notices_of(year, scenario, hours=hours, still=still),
+        "cautions": cautions_of(scenario, hours=hours, still=still),
     }
+
+
+def _heat_held(year: HeatYear, without: HeatYear) -> dict[str, Any]:
+    """What the collector holds, where that comes from, and what warming it up cost."""
+    found = _capacity(year.conditions.collector, year.conditions.network)
+    if year.drift:
+        found["warming_up_kWh_m2"] = without.useful_kWh_m2 - year.useful_kWh_m2
+    return found
+
+
+def _capacity(collector: Collector, network: Network) -> dict[str, Any]:
+    total, parts = collector.capacity, held_heat(collector, network)
+    if total is None and parts is None:
+        return {"capacity_kJ_m2K": None, "from": "not known", "warming_up_kWh_m2": None}
+    if total is not None or parts is None:
+        return {"capacity_kJ_m2K": (total or 0.0) / 1e3, "from": "the scenario", "warming_up_kWh_m2": None}
+    each = {f"{name}_kJ_m2K": value / 1e3 for name, value in parts._asdict().items()}
+    return {"capacity_kJ_m2K": parts.total / 1e3, "from": "the materials", **each, "warming_up_kWh_m2": None}
 
 
 def _tidy(celsius: float) -> float:
@@ -135,19 +161,19 @@ def _tidy(celsius: float) -> float:
     return round(celsius, 9)
 
 
-def _sums(year: HeatYear) -> dict[str, float]:
-    """kWh/m2 of the year by where it went; the losses are those of the running hours, idle is what standing hours absorb."""
-    running, absorbed = year.running, year.conditions.absorbed.plate
-    plane, taken = float(year.conditions.plane.total.sum()) / 1e3, float(absorbed.sum()) / 1e3
+def _sums(conditions: Conditions, hours: Operated) -> dict[str, float]:
+    """kWh/m2 of the year by where it went; the losses are those while the pump runs, idle is what is lost while it stands."""
+    plane, taken = float(conditions.plane.total.sum()) / 1e3, float(conditions.absorbed.plate.sum()) / 1e3
     paths = {
-        "useful_kWh_m2": running.useful,
-        "top_convection_kWh_m2": running.losses.convection,
-        "top_radiation_kWh_m2": running.losses.radiation,
-        "back_kWh_m2": running.losses.back,
-        "edge_kWh_m2": running.losses.edge,
-        "idle_kWh_m2": absorbed[~year.on],
+        "useful_kWh_m2": hours.useful,
+        "top_convection_kWh_m2": hours.losses.convection,
+        "top_radiation_kWh_m2": hours.losses.radiation,
+        "back_kWh_m2": hours.losses.back,
+        "edge_kWh_m2": hours.losses.edge,
+        "idle_kWh_m2": hours.idle,
+        "stored_kWh_m2": hours.stored,
     }
-    gone = {key: float(values.sum()) / 1e3 for key, values in paths.items()} | {"stored_kWh_m2": 0.0}
+    gone = {key: float(values.sum()) / 1e3 for key, values in paths.items()}
     return {
         "plane_kWh_m2": plane,
         "optical_kWh_m2": plane - taken,
@@ -167,22 +193,16 @@ def _sizes(year: HeatYear, scenario: Scenario) -> dict[str, float]:
     return sizes
 
 
-def _months(year: HeatYear) -> list[dict[str, float]]:
-    month, useful = year.conditions.weather.month, np.zeros(len(year.on))
-    useful[year.on] = year.running.useful
+def _months(conditions: Conditions, hours: Operated) -> list[dict[str, float]]:
     columns = {
-        "plane_kWh_m2": year.conditions.plane.total,
-        "absorbed_kWh_m2": year.conditions.absorbed.plate,
-        "useful_kWh_m2": useful,
-        "hours_on": year.on * 1e3,
+        "plane_kWh_m2": conditions.plane.total,
+        "absorbed_kWh_m2": conditions.absorbed.plate,
+        "useful_kWh_m2": hours.useful,
+        "hours_on": hours.running * 1e3,
     }
+    month = conditions.weather.month
     sums = {key: np.bincount(month, weights=values, minlength=13) / 1e3 for key, values in columns.items()}
-    return [
-        {"month": number}
-        | {key: float(values[number]) for key, values in sums.items() if key != "hours_on"}
-        | {"hours_on": round(sums["hours_on"][number])}
-        for number in range(1, 13)
-    ]
+    return [{"month": number} | {key: float(values[number]) for key, values in sums.items()} for number in range(1, 13)]
 
 
 def _hottest(conditions: Conditions, still: SteadyState) -> list[dict[str, Any]]:
@@ -263,15 +283,13 @@ def hours_table(run: Run) -> dict[str, Floats | list[str]]:
         ``HOUR_COLUMNS``, each of the year's length; ``time`` is the middle of the hour in local standard time, ``cover_C`` the
         outermost cover's (the plate's own without a cover), and fluid temperatures of standing hours are the plate's.
     """
-    year, still = run.year, run.still
-    conditions, hours = year.conditions, still.replaced(year.on, year.running)
-    inlet = 2.0 * hours.t_mean - hours.t_outlet
-    if year.feed.at_inlet:
-        inlet = np.where(year.on, year.feed.temperature, hours.t_plate)
+    conditions, hours, still, feed = run.year.conditions, run.hours, run.still, run.year.uptake.feed
+    held = feed.temperature if feed.at_inlet else 2.0 * hours.t_mean - hours.t_outlet
+    inlet = np.where(hours.on, held, hours.t_plate)
     temperatures = (hours.t_plate, hours.nodes[0], inlet, hours.t_mean, hours.t_outlet, still.t_plate)
     values = (
         conditions.plane.total, conditions.absorbed.plate, hours.useful, hours.losses.convection, hours.losses.radiation,
-        hours.losses.back, hours.losses.edge, year.on.astype(float),
+        hours.losses.back, hours.losses.edge, hours.idle, hours.stored, hours.running,
         *(t - zero_Celsius for t in (*temperatures, conditions.around.t_air, conditions.around.t_sky)),
         conditions.around.h_wind, hours.residual,
     )  # fmt: skip

@@ -6,10 +6,10 @@ from collections.abc import Iterator
 
 from scipy.constants import zero_Celsius
 
+from collector.balance.operated import Operated
 from collector.balance.steady import SteadyState
 from collector.build.scenario import Scenario
 from collector.physics.fluids import freezing_point
-from collector.study.year import HeatYear
 from weather.year import Floats
 
 __all__ = ["at_stagnation", "cautions_of", "when_running"]
@@ -21,15 +21,15 @@ GLYCOL_AGES = 120.0  # C; common practice, no source
 LAST = "Work on roofs, wind and snow load, pressure and electrics: follow local codes and licensed practice."
 
 
-def cautions_of(year: HeatYear, scenario: Scenario, *, still: SteadyState) -> list[str]:
+def cautions_of(scenario: Scenario, *, hours: Operated, still: SteadyState) -> list[str]:
     """Cautions that this year's temperatures call for.
 
     Parameters
     ----------
-    year
-        Solved.
     scenario
-        What it was solved for.
+        What was solved.
+    hours
+        As operated.
     still
         Every hour with the pump stopped.
 
@@ -38,7 +38,7 @@ def cautions_of(year: HeatYear, scenario: Scenario, *, still: SteadyState) -> li
     list of str
         At least one.
     """
-    running = year.running.t_outlet
+    running = hours.t_outlet[hours.on]
     return [
         *at_stagnation(_celsius(still.t_plate, hottest=True), fluid=scenario.fluid.name),
         *_when_cold(_celsius(still.t_plate, hottest=False), scenario),

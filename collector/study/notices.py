@@ -8,13 +8,14 @@ import numpy as np
 from scipy.constants import zero_Celsius
 
 from collector.balance.losses import gap_rayleigh
-from collector.balance.steady import SteadyState
+from collector.balance.operated import Operated
+from collector.balance.steady import SteadyState, Stream
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import valid_range
 from collector.study.year import HeatYear, wind_at_collector
 from weather.sky import DEW_POINT_RANGE, NEEDS
-from weather.year import Floats
+from weather.year import Floats, Mask
 
 __all__ = ["notices_of"]
 
@@ -23,7 +24,7 @@ LEAST_ASPECT = 12.0  # Hollands et al. 1976
 TRANSITION = (2300.0, 10_000.0)  # Reynolds numbers between laminar and turbulent tube flow
 
 
-def notices_of(year: HeatYear, scenario: Scenario, *, still: SteadyState) -> list[str]:
+def notices_of(year: HeatYear, scenario: Scenario, *, hours: Operated, still: SteadyState) -> list[str]:
     """Everything that was filled, clipped, mended, out of range or not converged, a sentence each.
 
     Parameters
@@ -32,6 +33,8 @@ def notices_of(year: HeatYear, scenario: Scenario, *, still: SteadyState) -> lis
         Solved.
     scenario
         What it was solved for.
+    hours
+        As operated.
     still
         Every hour with the pump stopped.
 
@@ -43,35 +46,34 @@ def notices_of(year: HeatYear, scenario: Scenario, *, still: SteadyState) -> lis
     return [
         *year.conditions.weather.notices,
         *year.conditions.plane.notices,
-        *_unsolved(year, still),
-        *_fluid(year, scenario),
-        *_film(year),
-        *_wind(year, scenario),
-        *_sky(year, scenario),
-        *_gaps(year),
+        *_unsolved(hours, still),
+        *_fluid(hours, scenario),
+        *_film(hours, year.uptake.stream),
+        *_wind(year, scenario, on=hours.on),
+        *_sky(year, scenario, on=hours.on),
+        *_gaps(year, hours),
     ]
 
 
-def _unsolved(year: HeatYear, still: SteadyState) -> Iterator[str]:
-    for name, state in (("running", year.running), ("with the pump stopped", still)):
-        open_hours = np.count_nonzero(~state.converged)
+def _unsolved(hours: Operated, still: SteadyState) -> Iterator[str]:
+    for name, converged in (("as operated", hours.converged), ("with the pump stopped", still.converged)):
+        open_hours = np.count_nonzero(~converged)
         if open_hours:
             yield f"{open_hours} h did not converge {name}: their numbers are not to be trusted"
 
 
-def _fluid(year: HeatYear, scenario: Scenario) -> Iterator[str]:
+def _fluid(hours: Operated, scenario: Scenario) -> Iterator[str]:
     fluid = scenario.fluid
     low, high = valid_range(fluid.name, mass_fraction=fluid.mass_fraction)
-    t_mean = year.running.t_mean
+    t_mean = hours.t_mean[hours.on]
     outside = np.count_nonzero((t_mean < low) | (t_mean > high))
     if outside:
         span = f"{low - zero_Celsius:.0f} to {high - zero_Celsius:.0f} C"
         yield f"{fluid.name}: {outside} running h outside the data's {span}, held at its end"
 
 
-def _film(year: HeatYear) -> Iterator[str]:
-    stream = year.conditions.stream
-    reynolds = np.interp(year.running.t_mean, stream.t, stream.reynolds)
+def _film(hours: Operated, stream: Stream) -> Iterator[str]:
+    reynolds = np.interp(hours.t_mean[hours.on], stream.t, stream.reynolds)
     between = np.count_nonzero((reynolds > TRANSITION[0]) & (reynolds < TRANSITION[1]))
     if between:
         lowest, highest = reynolds.min(), reynolds.max()
@@ -81,31 +83,31 @@ def _film(year: HeatYear) -> Iterator[str]:
         )
 
 
-def _wind(year: HeatYear, scenario: Scenario) -> Iterator[str]:
+def _wind(year: HeatYear, scenario: Scenario, *, on: Mask) -> Iterator[str]:
     limit = WIND_RELATIONS[scenario.models.wind].limit
     wind, _ = wind_at_collector(scenario, year.conditions.weather.wind)
-    above = wind[year.on] > limit
+    above = wind[on] > limit
     if above.any():
         yield (
             f"wind relation '{scenario.models.wind}' was found up to {limit:g} m/s: {np.count_nonzero(above)} running h "
-            f"are above (to {wind[year.on].max():.1f} m/s), extrapolated"
+            f"are above (to {wind[on].max():.1f} m/s), extrapolated"
         )
 
 
-def _sky(year: HeatYear, scenario: Scenario) -> Iterator[str]:
+def _sky(year: HeatYear, scenario: Scenario, *, on: Mask) -> Iterator[str]:
     t_dew = year.conditions.weather.t_dew
     if t_dew is None or "t_dew" not in NEEDS.get(scenario.models.sky, ()):
         return
     low, high = DEW_POINT_RANGE
-    outside = np.count_nonzero((t_dew[year.on] < low) | (t_dew[year.on] > high))
+    outside = np.count_nonzero((t_dew[on] < low) | (t_dew[on] > high))
     if outside:
         span = f"{low - zero_Celsius:.0f} to {high - zero_Celsius:.0f} C"
         yield f"sky relation '{scenario.models.sky}': {outside} running h with a dew point outside {span}, extrapolated"
 
 
-def _gaps(year: HeatYear) -> Iterator[str]:
+def _gaps(year: HeatYear, hours: Operated) -> Iterator[str]:
     conditions = year.conditions
-    rows: list[Floats] = gap_rayleigh(conditions.network, nodes=year.running.nodes)
+    rows: list[Floats] = gap_rayleigh(conditions.network, nodes=hours.nodes[:, hours.on])
     for number, (gap, rayleigh) in enumerate(zip(conditions.network.gaps, rows, strict=True), start=1):
         above = np.count_nonzero(rayleigh > HIGHEST_RAYLEIGH)
         if above:

@@ -9,9 +9,12 @@ from pathlib import Path
 import numpy as np
 from scipy.constants import zero_Celsius
 
+from collector.balance.capacity import held_heat
 from collector.balance.losses import Network, Surroundings, network_of
+from collector.balance.operated import Operated, operated_steadily
 from collector.balance.optics import Absorbed, absorbed_power, optics_of
 from collector.balance.steady import Feed, SteadyState, Stream, Uptake, operate, solve_stagnation, stream_of
+from collector.balance.transient import solve_drift
 from collector.build.collector import Collector, collector_of
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
@@ -43,8 +46,10 @@ class Conditions:
     ----------
     weather, plane, around, absorbed
         What the hours bring.
-    collector, network, stream
+    collector, network
         What is solved.
+    capacity
+        Heat held per kelvin of the plate, None where not known or left out [J/m2K].
     """
 
     weather: WeatherYear
@@ -53,7 +58,7 @@ class Conditions:
     absorbed: Absorbed
     collector: Collector
     network: Network
-    stream: Stream
+    capacity: float | None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -64,24 +69,37 @@ class HeatYear:
     ----------
     conditions
         What the year was solved for.
-    feed
-        The fluid temperature held.
+    uptake
+        Tubes, stream and the fluid temperature held.
     running, on
-        The hours that run, and which of the year's n they are.
+        The hours that run, and which of the year's n they are; of a collector without heat held.
+    drift
+        All hours, with heat held.
     """
 
     conditions: Conditions
-    feed: Feed
-    running: SteadyState
-    on: Mask
+    uptake: Uptake
+    running: SteadyState | None
+    on: Mask | None
+    drift: Operated | None
 
     @property
     def useful_kWh_m2(self) -> float:  # noqa: N802 # the unit's symbol
         """The year's heat per area of length x width."""
-        return float(self.running.useful.sum() / 1e3)
+        solved = self.running if self.drift is None else self.drift
+        return float(solved.useful.sum() / 1e3) if solved is not None else 0.0
+
+    def operated(self, still: SteadyState) -> Operated:
+        """Return every hour as the pump had it; standing hours without heat held are those of stagnation."""
+        if self.running is None or self.on is None or self.drift is not None:
+            assert self.drift is not None  # noqa: S101 # a year is solved one way or the other
+            return self.drift
+        return operated_steadily(still, self.running, self.on)
 
 
-def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = None) -> list[HeatYear]:
+def heat_years(
+    scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = None, held: bool = True
+) -> list[HeatYear]:
     """Solve a scenario's year, once for each temperature it asks for.
 
     Parameters
@@ -92,6 +110,8 @@ def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = No
         The year it gets, n hours.
     sun
         At mid-hour, if it is known already.
+    held
+        Whether the heat that the collector holds counts, where it is known.
 
     Returns
     -------
@@ -111,19 +131,30 @@ def heat_years(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = No
         absorbed=absorbed,
         collector=collector,
         network=network,
-        stream=stream,
+        capacity=_capacity(collector, network) if held else None,
     )
-    return [_at(conditions, feed) for feed in _feeds(scenario)]
+    return [_at(conditions, uptake) for uptake in _uptakes(scenario, collector, stream)]
 
 
-def _at(conditions: Conditions, feed: Feed) -> HeatYear:
-    uptake = Uptake(collector=conditions.collector, stream=conditions.stream, feed=feed)
-    running, on = operate(conditions.network, conditions.around, conditions.absorbed, uptake=uptake)
-    return HeatYear(conditions=conditions, feed=feed, running=running, on=on)
+def _at(conditions: Conditions, uptake: Uptake) -> HeatYear:
+    network, around, absorbed = conditions.network, conditions.around, conditions.absorbed
+    if conditions.capacity is not None:
+        drift = solve_drift(network, around, absorbed, capacity=conditions.capacity, uptake=uptake)
+        return HeatYear(conditions=conditions, uptake=uptake, running=None, on=None, drift=drift)
+    running, on = operate(network, around, absorbed, uptake=uptake)
+    return HeatYear(conditions=conditions, uptake=uptake, running=running, on=on, drift=None)
+
+
+def _capacity(collector: Collector, network: Network) -> float | None:
+    """Heat held per kelvin: as given, or from the materials where all are known [J/m2K]."""
+    if collector.capacity is not None:
+        return collector.capacity
+    held = held_heat(collector, network)
+    return None if held is None else held.total
 
 
 def standing(conditions: Conditions) -> SteadyState:
-    """Every hour with the pump stopped.
+    """Every hour with the pump stopped, without heat held.
 
     Parameters
     ----------
@@ -136,6 +167,13 @@ def standing(conditions: Conditions) -> SteadyState:
         All n hours.
     """
     return solve_stagnation(conditions.network, conditions.around, conditions.absorbed)
+
+
+def _uptakes(scenario: Scenario, collector: Collector, stream: Stream) -> Iterator[Uptake]:
+    operation = scenario.operation
+    pump = {"start_above": operation.start_K or 0.0, "stop_above": operation.stop_K or 0.0}
+    for feed in _feeds(scenario):
+        yield Uptake(collector=collector, stream=stream, feed=feed, **pump)
 
 
 def _feeds(scenario: Scenario) -> Iterator[Feed]:

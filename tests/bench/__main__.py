@@ -14,7 +14,8 @@ import pandas as pd
 from pvlib import solarposition
 
 from collector.balance.optics import absorbed_power, optics_of
-from collector.balance.steady import Uptake, operate
+from collector.balance.steady import operate
+from collector.balance.transient import solve_drift
 from collector.build.reading import read_scenario
 from collector.study.year import HeatYear, heat_years, open_scenario_weather, standing
 from tests.bench.compiled import compiled_loop
@@ -24,6 +25,7 @@ from weather.sun import sun_position
 SCENARIO = Path(__file__).parents[2] / "scenarios" / "laundry.toml"
 ROUNDS = 15
 DESIGNS = 1000
+HELD = 9000.0  # J/m2K
 Row = tuple[str, str, float, float | None]
 
 
@@ -52,7 +54,7 @@ def _demo() -> tuple[HeatYear, Callable[[], object], Callable[[], object]]:
     scenario = read_scenario(SCENARIO)
     weather = open_scenario_weather(scenario, base=SCENARIO.parent)
     sun = sun_position(weather)
-    (year,) = heat_years(scenario, weather=weather, sun=sun)
+    (year,) = heat_years(scenario, weather=weather, sun=sun, held=False)
     index = pd.DatetimeIndex(weather.time_mid).tz_localize("UTC")
     site = weather.site
 
@@ -61,7 +63,7 @@ def _demo() -> tuple[HeatYear, Callable[[], object], Callable[[], object]]:
             index, site.latitude_deg, site.longitude_deg, site.altitude_m, method="nrel_numpy"
         )
 
-    return year, sun_of_the_year, lambda: heat_years(scenario, weather=weather, sun=sun)
+    return year, sun_of_the_year, lambda: heat_years(scenario, weather=weather, sun=sun, held=False)
 
 
 def _in_process() -> list[Row]:
@@ -69,17 +71,22 @@ def _in_process() -> list[Row]:
     conditions = year.conditions
 
     def solve() -> object:
-        uptake = Uptake(collector=conditions.collector, stream=conditions.stream, feed=year.feed)
-        return operate(conditions.network, conditions.around, conditions.absorbed, uptake=uptake)
+        return operate(conditions.network, conditions.around, conditions.absorbed, uptake=year.uptake)
+
+    def drift() -> object:
+        return solve_drift(
+            conditions.network, conditions.around, conditions.absorbed, capacity=HELD, uptake=year.uptake
+        )
 
     actions: dict[str, Callable[[], object]] = {
         "sun": sun_of_the_year,
         "solve": solve,
         "stagnation": lambda: standing(conditions),
+        "drift": drift,
         "design": lambda: _design(year),
         "year": whole_year,
     }
-    loop = compiled_loop(conditions, year.feed)
+    loop = compiled_loop(conditions, year.uptake)
     if loop:
         useful, _, _ = loop()
         assert abs(useful.sum() / 1e3 - year.useful_kWh_m2) < 1e-3, "the compiled loop solves something else"
@@ -95,6 +102,7 @@ def _in_process() -> list[Row]:
             0.20,
         ),
         ("  of which running", "the same", best["solve"] / sun, None),
+        ("one year with heat held", "the same", best["drift"] / sun, 0.40),
         ("one more design on the same site", "optics, balance / sun position", best["design"] / sun, 0.13),
         ("one more design and plane", "sunlight on the plane too / same", best["year"] / sun, None),
         ("against the script one would write", "brentq hour by hour / ours", script / best["solve"], 200.0),
@@ -109,8 +117,7 @@ def _design(year: HeatYear) -> float:
     """What each further design on a site costs: its optics, its loss network, its fluid, its year."""
     conditions = year.conditions
     absorbed = absorbed_power(optics_of(conditions.collector), conditions.plane)
-    uptake = Uptake(collector=conditions.collector, stream=conditions.stream, feed=year.feed)
-    running, _ = operate(conditions.network, conditions.around, absorbed, uptake=uptake)
+    running, _ = operate(conditions.network, conditions.around, absorbed, uptake=year.uptake)
     return float(running.useful.sum())
 
 
@@ -118,9 +125,10 @@ def _script(year: HeatYear) -> float:
     """Time of the hour-by-hour script for the whole year [s], from every 40th hour, and a check that it agrees."""
     hours = np.arange(7, len(year.on), 40)
     start = time.perf_counter()
-    useful = hour_by_hour(year.conditions, year.feed, hours)
+    useful = hour_by_hour(year.conditions, year.uptake, hours)
     elapsed = time.perf_counter() - start
     ours = np.zeros(len(year.on))
+    assert year.running is not None
     ours[year.on] = year.running.useful
     assert np.abs(ours[hours] - useful).max() < 0.1, "the script solves something else"
     return elapsed * len(year.on) / len(hours)

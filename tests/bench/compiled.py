@@ -11,7 +11,7 @@ from pathlib import Path
 
 import numpy as np
 
-from collector.balance.steady import Feed
+from collector.balance.steady import Uptake
 from collector.study.year import Conditions
 
 
@@ -28,7 +28,7 @@ class Build(ctypes.Structure):
     )
 
 
-def compiled_loop(conditions: Conditions, feed: Feed):
+def compiled_loop(conditions: Conditions, uptake: Uptake):
     """A function that solves the year in C and returns useful gain, plate temperature and evaluations; None without a compiler."""
     compiler = shutil.which("cc") or shutil.which("gcc") or shutil.which("clang")
     if compiler is None:
@@ -40,7 +40,7 @@ def compiled_loop(conditions: Conditions, feed: Feed):
     solve.restype = ctypes.c_long
     shutil.rmtree(folder)
 
-    network, absorber, stream = conditions.network, conditions.collector.absorber, conditions.stream
+    network, absorber, stream, feed = conditions.network, conditions.collector.absorber, uptake.stream, uptake.feed
     (gap,) = network.gaps
     tilt = math.radians(network.tilt_deg)
     build = Build(

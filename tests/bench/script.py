@@ -7,19 +7,19 @@ import math
 import numpy as np
 from scipy.optimize import brentq
 
-from collector.balance.steady import Feed
+from collector.balance.steady import Uptake
 from collector.study.year import Conditions
 
 SIGMA = 5.670374419e-8
 
 
-def hour_by_hour(conditions: Conditions, feed: Feed, hours: np.ndarray) -> np.ndarray:
+def hour_by_hour(conditions: Conditions, uptake: Uptake, hours: np.ndarray) -> np.ndarray:
     """Useful gain of some hours of a collector with one cover, below 55 degrees of tilt."""
-    return np.array([_hour(conditions, feed, int(hour)) for hour in hours])
+    return np.array([_hour(conditions, uptake, int(hour)) for hour in hours])
 
 
-def _hour(conditions: Conditions, feed: Feed, hour: int) -> float:
-    network, absorber, stream = conditions.network, conditions.collector.absorber, conditions.stream
+def _hour(conditions: Conditions, uptake: Uptake, hour: int) -> float:
+    network, absorber, stream, feed = conditions.network, conditions.collector.absorber, uptake.stream, uptake.feed
     (gap,) = network.gaps
     around = conditions.around
     t_air, h_wind = float(around.t_air[hour]), float(around.h_wind[hour])

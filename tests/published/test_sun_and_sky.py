@@ -90,7 +90,9 @@ def test_irradiance_outside_the_atmosphere(instant, expected):
 # Zenith, azimuth of the sun; tilt, azimuth of the plane, clockwise from north, all in deg.
 BEAM = [
     pytest.param((60.6185, 154.7779), (45, 195), "normal", printed("0.817"), id="DB Example 1.6.1"),
-    pytest.param((60.6185, 154.7779), (45, 195), "flat", printed("1.66", claimed=0.01), id="DB Example 1.8.1"),
+    pytest.param(
+        (60.6185, 154.7779), (45, 195), "flat", printed("1.66", claimed=0.01), id="DB Example 1.8.1, from memory"
+    ),
     pytest.param((63.4120, 138.4476), (30, 180), "flat", printed("1.61"), id="DB Example 1.8.2, from memory"),
     pytest.param((63.4120, 138.4476), (50, 180), "flat", printed("1.79"), id="DB Example 1.8.3, from memory"),
 ]
