@@ -25,7 +25,8 @@ TOLERANCE = 1e-8  # W/m2, of every node's balance
 SOLVED = 1e-6  # W/m2, beyond which an hour counts as not converged
 MOST_ITERATIONS = 60
 LONGEST_STEP = 60.0  # K
-SETTLED = 2  # iterations after which the film stays at a mean fluid temperature found to some 0.02 K
+SETTLED = 0.02  # K, between the mean fluid temperature and the one its film is taken at
+MOST_FILMS = 8  # iterations after which the film stays as it is
 
 
 class Feed(NamedTuple):
@@ -246,7 +247,7 @@ def solve_stagnation(network: Network, around: Surroundings, absorbed: Absorbed)
     loosely = 2.0 + network.u_back + network.u_edge + (0.0 if network.gaps else around.h_wind)
     t_plate = around.t_air + np.minimum(absorbed.plate / loosely, 120.0)
     first = first_guess(network, around, t_plate=t_plate)
-    return _solve(network, around, absorbed, nodes=first, uptake=None, t_mean=t_plate)
+    return _solve(network, around, absorbed, nodes=first, uptake=None, t_mean=np.zeros_like(t_plate))
 
 
 def solve_running(network: Network, around: Surroundings, absorbed: Absorbed, *, uptake: Uptake) -> SteadyState:
@@ -318,21 +319,24 @@ def _solve(
     """Newton on plate and covers of all hours at once; hours that balance are put away."""
     hours = np.arange(nodes.shape[1])
     whole = network.facing(around)
-    here, sun, flow = whole, absorbed, _flow(uptake, t_mean)
+    here, sun, flow, t_film = whole, absorbed, _flow(uptake, t_mean), t_mean
     solved, solved_flow = nodes, flow
     for iteration in range(MOST_ITERATIONS):
         step = newton_step(network, here, sun_on_covers=sun.covers, nodes=nodes)
         useful, conductance, t_mean = _drawn(uptake, flow, slope=step.slope, t_plate=nodes[-1])
-        going = _imbalance(step.losses, sun=sun.plate, useful=useful) > TOLERANCE
+        late = (np.abs(t_mean - t_film) > SETTLED) & (iteration < MOST_FILMS)
+        going = (_imbalance(step.losses, sun=sun.plate, useful=useful) > TOLERANCE) | late
         if not going.any():
             break
         plate = (sun.plate - useful - step.loss) / (step.slope + conductance)
         longest = LONGEST_STEP if iteration < 20 else LONGEST_STEP / 2 ** (iteration - 19)
         nodes, held = nodes + np.clip(step.move(plate=plate), -longest, longest), flow
-        flow = _flow(uptake, t_mean) if iteration < SETTLED else flow
+        if late.any():
+            flow, t_film = np.where(late, _flow(uptake, t_mean), flow), np.where(late, t_mean, t_film)
         if np.count_nonzero(going) < 0.7 * going.size:
             solved, solved_flow = _put(solved, nodes, hours), _put(solved_flow, held, hours)
             nodes, flow, hours, here, sun = nodes[:, going], flow[:, going], hours[going], here.at(going), sun.at(going)
+            t_film = t_film[going]
     solved, solved_flow = _put(solved, nodes, hours), _put(solved_flow, flow, hours)
     if hours.size < solved.shape[1] or going.any():
         step = newton_step(network, whole, sun_on_covers=absorbed.covers, nodes=solved)
@@ -357,7 +361,7 @@ def _drawn(uptake: Uptake | None, flow: Floats, *, slope: Floats, t_plate: Float
     """Heat that the fluid draws, its slope to the plate's temperature, and the mean fluid temperature."""
     if uptake is None:
         none = np.zeros_like(t_plate)
-        return none, none, t_plate
+        return none, none, none
     coupling = uptake.coupling(slope, flow=Flow(*flow))
     useful = uptake.useful(coupling, t_plate=t_plate)
     return useful, coupling.conductance, uptake.mean(coupling, t_plate=t_plate, useful=useful)

@@ -12,7 +12,7 @@ from scipy.linalg.lapack import dtbtrs
 from collector.balance.losses import Facing, Losses, Network, Step, Surroundings, newton_step
 from collector.balance.operated import Operated
 from collector.balance.optics import Absorbed
-from collector.balance.steady import LONGEST_STEP, SETTLED, SOLVED, Flow, Uptake, first_guess
+from collector.balance.steady import LONGEST_STEP, MOST_FILMS, SETTLED, SOLVED, Flow, Uptake, first_guess
 from weather.year import Floats, Mask
 
 __all__ = ["solve_drift"]
@@ -118,6 +118,7 @@ def solve_drift(
     """
     model = _Model(network, network.facing(around), absorbed, uptake, capacity / HOUR)
     memories, flow = model.guess(around)
+    t_film = np.full(len(absorbed.plate), uptake.feed.temperature)
     ran = np.zeros(len(absorbed.plate), dtype=bool)
     ends = np.minimum(memories[0].nodes[-1], memories[1].nodes[-1])
     known: _Part | None = None
@@ -130,9 +131,9 @@ def solve_drift(
             break
         shift = np.clip(_carried(missed, by_start), -LONGEST_STEP, LONGEST_STEP)
         _remember(memories, first, second, moved=np.roll(shift, 1))
-        if iteration < SETTLED and uptake.feed.at_inlet:
+        if iteration < MOST_FILMS:
             for part in (first, second):
-                flow[:, part.hours[part.on]] = uptake.stream.at(part.line.t_mean[part.on])
+                model.refilm(part, flow, t_film)
         ends = ends + shift
     return _drift(first, second, absorbed, end=end, rate=model.rate)
 
@@ -230,6 +231,13 @@ class _Model(NamedTuple):
             end, mean = np.where(cycles, start, end), np.where(cycles, between, mean)
             by_start, runs = np.where(cycles, 0.0, by_start), on | cycles
         return _Part(hours, on, runs, nodes, line, share, start, end, mean, by_start, np.zeros(hours.size))
+
+    def refilm(self, part: _Part, flow: Floats, t_film: Floats) -> None:
+        """Take film and heat capacity flow again where the mean fluid temperature has left the one they were taken at."""
+        late = part.on & (np.abs(part.line.t_mean - t_film[part.hours]) > SETTLED)
+        if late.any():
+            hours, t_mean = part.hours[late], part.line.t_mean[late]
+            flow[:, hours], t_film[hours] = self.uptake.stream.at(t_mean), t_mean
 
     def _renewed(self, known: _Part, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
         """The known line, taken again in the hours whose nodes have moved or whose pump has turned."""
