@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from collector.build.collector import Collector
 from collector.physics.convection import air, gap_nusselt
 from collector.physics.radiation import SIGMA, parallel_plates_factor, radiative_flux, sky_view_factor
+from collector.physics.spectrum import EmittanceCurve
 from weather.year import Floats, Mask
 
 __all__ = ["Facing", "Gap", "Losses", "Network", "Step", "Surroundings", "gap_rayleigh", "network_of", "newton_step"]
@@ -18,16 +19,18 @@ __all__ = ["Facing", "Gap", "Losses", "Network", "Step", "Surroundings", "gap_ra
 
 @dataclass(frozen=True, kw_only=True)
 class Surroundings:
-    """What the collector faces, each ``(n,)``: air, sky and ground [K], wind coefficient [W/m2K]."""
+    """What the collector faces, each ``(n,)``: air, sky and ground [K], wind coefficient [W/m2K], and wind at it [m/s]."""
 
     t_air: Floats
     t_sky: Floats
     t_ground: Floats
     h_wind: Floats
+    wind: Floats | None = None
 
     def at(self, hours: Mask | slice) -> Surroundings:
         """Return the same for some of the hours."""
-        return Surroundings(**{name: column[hours] for name, column in vars(self).items()})
+        known = {name: column for name, column in vars(self).items() if column is not None}
+        return Surroundings(**{name: column[hours] for name, column in known.items()})
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -69,6 +72,11 @@ class Network:
         Of the air in the gaps [Pa].
     u_back, u_edge
         Plate to outside air [W/m2K].
+    radiating
+        The plate's emittance where that depends on its temperature; it then takes the place of the innermost gap's exchange
+        factor, or of ``eps_front`` without a cover.
+    eps_above
+        Emittance of the face above the plate.
     """
 
     gaps: tuple[Gap, ...]
@@ -78,6 +86,12 @@ class Network:
     pressure: float
     u_back: float
     u_edge: float
+    radiating: EmittanceCurve | None = None
+    eps_above: float = 1.0
+
+    def step(self, facing: Facing, *, sun_on_covers: Floats, nodes: Floats) -> Step:
+        """Return the losses linearised at a state, covers eliminated."""
+        return newton_step(self, facing, sun_on_covers=sun_on_covers, nodes=nodes)
 
     def facing(self, around: Surroundings) -> Facing:
         """Return what the front faces: sky and ground become one radiant temperature by their shares of the view."""
@@ -155,6 +169,8 @@ def network_of(collector: Collector, *, pressure: float) -> Network:
         pressure=pressure,
         u_back=collector.u_back,
         u_edge=collector.u_edge,
+        radiating=collector.absorber.radiating,
+        eps_above=collector.covers[-1].emittance if collector.covers else 1.0,
     )
 
 
@@ -196,10 +212,21 @@ def newton_step(network: Network, facing: Facing, *, sun_on_covers: Floats, node
 
 def _outside(network: Network, facing: Facing, t_front: Floats) -> tuple[Floats, Floats, Floats]:
     """Convection and radiation from the outermost face, and the slope of both together."""
+    if network.radiating is not None and not network.gaps:
+        return _outside_of_plate(network.radiating, facing, t_front)
     strength = network.eps_front * SIGMA
     cube = t_front * t_front * t_front
     radiation = strength * (cube * t_front - facing.radiant)
     return facing.h_wind * (t_front - facing.t_air), radiation, (4.0 * strength) * cube + facing.h_wind
+
+
+def _outside_of_plate(radiating: EmittanceCurve, facing: Facing, t_plate: Floats) -> tuple[Floats, Floats, Floats]:
+    """The same from a bare plate whose emittance, and with it what it takes up of the sky's long wave, follows its temperature."""
+    eps, rise = radiating(t_plate)
+    cube = t_plate * t_plate * t_plate
+    black = SIGMA * (cube * t_plate - facing.radiant)
+    slope = (4.0 * SIGMA) * eps * cube + rise * black + facing.h_wind
+    return facing.h_wind * (t_plate - facing.t_air), eps * black, slope
 
 
 def _through_gap(
@@ -216,7 +243,13 @@ def _through_gap(
     by_mean = (
         0.5 * difference * (nusselt * (gas.conductivity_slope / gap.thickness) + film * climb * gas.rayleigh_log_slope)
     )
-    radiation, by_lower, by_upper = radiative_flux(t_lower, t_upper, factor=gap.exchange)
+    if network.radiating is not None and gap is network.gaps[-1]:
+        eps, rise = network.radiating(t_lower)
+        factor = 1.0 / (1.0 / network.eps_above + 1.0 / eps - 1.0)
+        radiation, by_lower, by_upper = radiative_flux(t_lower, t_upper, factor=factor)
+        by_lower += radiation * factor * rise / (eps * eps)
+    else:
+        radiation, by_lower, by_upper = radiative_flux(t_lower, t_upper, factor=gap.exchange)
     return convection, radiation, by_upper - by_difference + by_mean, by_lower + by_difference + by_mean
 
 

@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from typing import NamedTuple
+from typing import NamedTuple, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from collector.balance.losses import Losses, Network, Step, Surroundings, newton_step
+from collector.balance.losses import Facing, Losses, Step, Surroundings
 from collector.balance.optics import Absorbed
 from collector.build.collector import Collector
 from collector.physics.convection import tube_nusselt
@@ -19,7 +19,17 @@ from collector.physics.fin import capacity_ratio_factor, efficiency_factor, fin_
 from collector.physics.fluids import Liquid, liquid, valid_range
 from weather.year import Floats, Mask
 
-__all__ = ["Feed", "SteadyState", "Stream", "Uptake", "operate", "solve_running", "solve_stagnation", "stream_of"]
+__all__ = [
+    "Feed",
+    "SteadyState",
+    "Stream",
+    "Uptake",
+    "fluid_table",
+    "operate",
+    "solve_running",
+    "solve_stagnation",
+    "stream_of",
+]
 
 TOLERANCE = 1e-8  # W/m2, of every node's balance
 SOLVED = 1e-6  # W/m2, beyond which an hour counts as not converged
@@ -27,6 +37,28 @@ MOST_ITERATIONS = 60
 LONGEST_STEP = 60.0  # K
 SETTLED = 0.02  # K, between the mean fluid temperature and the one its film is taken at
 MOST_FILMS = 8  # iterations after which the film stays as it is
+
+
+class Network(Protocol):
+    """Losses of a collector, however they are known."""
+
+    @property
+    def gaps(self) -> Sequence[object]:
+        """Gas gaps, one a cover."""
+
+    @property
+    def u_back(self) -> float:
+        """Plate to air through the back [W/m2K]."""
+
+    @property
+    def u_edge(self) -> float:
+        """Plate to air through the edges [W/m2K]."""
+
+    def facing(self, around: Surroundings) -> Facing:
+        """Return what the front faces."""
+
+    def step(self, facing: Facing, *, sun_on_covers: Floats, nodes: Floats) -> Step:
+        """Return the losses linearised at a state."""
 
 
 class Feed(NamedTuple):
@@ -139,7 +171,7 @@ def stream_of(collector: Collector) -> Stream:
     Stream
         At steps of about half a kelvin.
     """
-    t, fluid = _fluid_table(collector.fluid, mass_fraction=collector.mass_fraction)
+    t, fluid = fluid_table(collector.fluid, mass_fraction=collector.mass_fraction)
     absorber = collector.absorber
     per_tube = collector.flow * absorber.pitch * collector.length
     reynolds = 4.0 * per_tube / (math.pi * absorber.inner * fluid.viscosity)
@@ -154,8 +186,8 @@ def stream_of(collector: Collector) -> Stream:
 
 
 @lru_cache(maxsize=16)
-def _fluid_table(name: str, *, mass_fraction: float) -> tuple[Floats, Liquid]:
-    """Temperatures over a fluid's range and its properties there, kept for the next collector with the same fluid."""
+def fluid_table(name: str, *, mass_fraction: float) -> tuple[Floats, Liquid]:
+    """Return temperatures over a fluid's range and its properties there, kept for the next collector with the same fluid."""
     low, high = valid_range(name, mass_fraction=mass_fraction)
     t = np.linspace(low, high, 2 * math.ceil(high - low) + 1)
     return t, liquid(name, mass_fraction=mass_fraction, t=t)
@@ -165,9 +197,9 @@ def _fluid_table(name: str, *, mass_fraction: float) -> tuple[Floats, Liquid]:
 class Uptake:
     """A collector's tubes with their stream, the temperature they are fed at, and how far above it the pump starts and stops."""
 
-    collector: Collector
     stream: Stream
     feed: Feed
+    collector: Collector | None = None
     start_above: float = 0.0
     stop_above: float = 0.0
 
@@ -193,6 +225,7 @@ class Uptake:
         -----
         **Source**: Duffie & Beckman, Eq. 6.7.6, 6.9.2 and 6.9.4; held by ``tests/test_steady.py`` and the independent solution.
         """
+        assert self.collector is not None  # noqa: S101 # known by its build; a test report couples in its own way
         absorber = self.collector.absorber
         fin = fin_efficiency(
             slope,
@@ -322,7 +355,7 @@ def _solve(
     here, sun, flow, t_film = whole, absorbed, _flow(uptake, t_mean), t_mean
     solved, solved_flow = nodes, flow
     for iteration in range(MOST_ITERATIONS):
-        step = newton_step(network, here, sun_on_covers=sun.covers, nodes=nodes)
+        step = network.step(here, sun_on_covers=sun.covers, nodes=nodes)
         useful, conductance, t_mean = _drawn(uptake, flow, slope=step.slope, t_plate=nodes[-1])
         late = (np.abs(t_mean - t_film) > SETTLED) & (iteration < MOST_FILMS)
         going = (_imbalance(step.losses, sun=sun.plate, useful=useful) > TOLERANCE) | late
@@ -339,7 +372,7 @@ def _solve(
             t_film = t_film[going]
     solved, solved_flow = _put(solved, nodes, hours), _put(solved_flow, flow, hours)
     if hours.size < solved.shape[1] or going.any():
-        step = newton_step(network, whole, sun_on_covers=absorbed.covers, nodes=solved)
+        step = network.step(whole, sun_on_covers=absorbed.covers, nodes=solved)
     return _state(step, absorbed, nodes=solved, flow=solved_flow, uptake=uptake)
 
 

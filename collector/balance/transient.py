@@ -9,10 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg.lapack import dtbtrs
 
-from collector.balance.losses import Facing, Losses, Network, Step, Surroundings, newton_step
+from collector.balance.losses import Facing, Losses, Step, Surroundings
 from collector.balance.operated import Operated
 from collector.balance.optics import Absorbed
-from collector.balance.steady import LONGEST_STEP, MOST_FILMS, SETTLED, SOLVED, Flow, Uptake, first_guess
+from collector.balance.steady import LONGEST_STEP, MOST_FILMS, SETTLED, SOLVED, Flow, Network, Uptake, first_guess
 from weather.year import Floats, Mask
 
 __all__ = ["solve_drift"]
@@ -197,8 +197,10 @@ class _Model(NamedTuple):
         rise = gain / self.rate / damping
         by_start, mean_by_start = 1.0 - line.fall / self.rate / damping, 1.0 / damping
         share = np.ones_like(start)
-        cut = (rise > way) != on
-        share[cut], weight[cut], by_start[cut] = _cut(line, cut, gain=gain, way=way, rate=self.rate)
+        left = line.at(start + way) / np.where(gain == 0.0, np.inf, gain)
+        cut = (left < 1.0) & (left > np.exp(-line.fall / self.rate)) & (gain * way > 0.0)
+        x = -np.log(left[cut])  # the exponential gets to the pump's temperature when this much of the gain is left
+        share[cut], weight[cut], by_start[cut] = x * self.rate / line.fall[cut], _weight(x), -self.rate / gain[cut]
         rise[cut], mean_by_start[cut] = way[cut], 1.0 - weight[cut]
         return _Part(
             hours, on, on, nodes, line, share, start, start + rise, start + weight * rise, by_start, mean_by_start
@@ -250,7 +252,7 @@ class _Model(NamedTuple):
     def _line(self, hours: Hours, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
         whole = hours.size == self.absorbed.plate.size
         sun, facing = (self.absorbed, self.facing) if whole else (self.absorbed.at(hours), self.facing.at(hours))
-        step = newton_step(self.network, facing, sun_on_covers=sun.covers, nodes=nodes)
+        step = self.network.step(facing, sun_on_covers=sun.covers, nodes=nodes)
         t_plate, here = nodes[-1], Flow(*flow[:, hours[on]])
         coupling = self.uptake.coupling(step.slope[on], flow=here)
         useful = self.uptake.useful(coupling, t_plate=t_plate[on])
@@ -277,20 +279,6 @@ def _put(whole: Any, part: Any, hours: Hours) -> Any:
         return merged
     inner = [_put(one, other, hours) for one, other in zip(whole, part, strict=True)]
     return type(whole)(*inner) if isinstance(whole, tuple) else inner
-
-
-def _cut(line: _Line, cut: Mask, *, gain: Floats, way: Floats, rate: float) -> tuple[Floats, Floats, Floats]:
-    """Parts that go all the way to the fed temperature: their share of the hour, mean's weight, and the share's move per kelvin.
-
-    By the exponential from the start, where the net gain is ``gain``, to the fed temperature, where it is what is left of it.
-    """
-    fall, here, far = line.fall[cut], gain[cut], way[cut]
-    left = np.maximum((here - fall * far) / here, 1e-12)
-    x = -np.log(left)
-    share = x * rate / fall
-    within = share < 1.0
-    by_start = np.where(within, -rate / here, 0.0)
-    return np.minimum(share, 1.0 - 1e-12), _weight(x), by_start
 
 
 def _weight(x: Floats) -> Floats:

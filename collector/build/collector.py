@@ -2,13 +2,20 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
 
 from collector.build.catalogue import entry
-from collector.build.scenario import AbsorberTable, CasingTable, CollectorTable, CoverTable, Scenario
+from collector.build.scenario import AbsorberTable, CasingTable, CollectorTable, CoverTable, ReportTable, Scenario
+from collector.build.surfaces import REFERENCE, Surface
 from collector.physics.glazing import slab_from_normal
+from collector.physics.spectrum import EmittanceCurve
+from weather.errors import InputError, Problem
 
-__all__ = ["Absorber", "Collector", "Cover", "Materials", "collector_of"]
+__all__ = ["Absorber", "Collector", "Cover", "Materials", "ReportedCollector", "collector_of", "values_of"]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -40,13 +47,15 @@ class Absorber:
     Parameters
     ----------
     absorptance, emittance
-        Solar at normal incidence; thermal.
+        Solar at normal incidence; thermal, at 100 C where it depends on the temperature.
     conductivity, thickness
         Of the plate [W/mK, m].
     pitch, outer, inner
         Distance between tubes and their diameters [m].
     bond_resistance
         Per length of tube; 0 is a perfect bond [mK/W].
+    radiating
+        Emittance over the plate's temperature; None of one emittance for all.
     """
 
     absorptance: float
@@ -57,6 +66,7 @@ class Absorber:
     outer: float
     inner: float
     bond_resistance: float
+    radiating: EmittanceCurve | None = None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -131,8 +141,55 @@ class Collector:
         return self.length * self.width
 
 
-def collector_of(scenario: Scenario) -> Collector:
-    """Collector that a scenario describes.
+@dataclass(frozen=True, kw_only=True)
+class ReportedCollector:
+    """A collector known by its test report, everything per area of length x width.
+
+    Parameters
+    ----------
+    eta0, a1, a2, a3, a4, a6, a7, a8
+        Coefficients of ISO 9806:2017 in SI units.
+    capacity
+        The report's a5; None where it has none [J/m2K].
+    beam_angles_deg, beam_modifiers
+        Beam incidence modifier, linear between the angles.
+    diffuse_modifier
+        Of sky and ground light; None integrates the beam's.
+    tested_to
+        Highest mean fluid above air in the test; None if not told [K].
+    length, width, tilt_deg, fluid, mass_fraction, flow, whole_sky
+        As for ``Collector``.
+    """
+
+    eta0: float
+    a1: float
+    a2: float
+    a3: float
+    a4: float
+    a6: float
+    a7: float
+    a8: float
+    capacity: float | None
+    beam_angles_deg: tuple[float, ...]
+    beam_modifiers: tuple[float, ...]
+    diffuse_modifier: float | None
+    tested_to: float | None
+    length: float
+    width: float
+    tilt_deg: float
+    fluid: str
+    mass_fraction: float
+    flow: float
+    whole_sky: bool
+
+    @property
+    def area(self) -> float:
+        """Length x width [m2]."""
+        return self.length * self.width
+
+
+def collector_of(scenario: Scenario) -> Collector | ReportedCollector:
+    """Collector that a scenario describes, by its build or by its test report.
 
     Parameters
     ----------
@@ -141,10 +198,14 @@ def collector_of(scenario: Scenario) -> Collector:
 
     Returns
     -------
-    Collector
+    Collector or ReportedCollector
         In SI units, catalogue names resolved.
     """
     table, models = scenario.collector, scenario.models
+    if table.tested is not None:
+        return _tested(scenario, table.tested)
+    assert table.casing is not None  # noqa: S101 # the scenario's check saw to it
+    assert table.absorber is not None  # noqa: S101 # likewise
     u_back, u_edge = _casing(table.casing, length=table.length_m, width=table.width_m)
     return Collector(
         covers=tuple(_cover(cover) for cover in table.cover),
@@ -161,8 +222,47 @@ def collector_of(scenario: Scenario) -> Collector:
         integrated_diffuse=models.diffuse == "integrated",
         whole_sky=models.longwave_view == "sky",
         capacity=None if table.capacity_kJ_m2K is None else 1e3 * table.capacity_kJ_m2K,
-        materials=_materials(table),
+        materials=_materials(table, table.absorber, table.casing),
     )
+
+
+def _tested(scenario: Scenario, report: ReportTable) -> ReportedCollector:
+    table = scenario.collector
+    per_area = report.area_m2 / (table.length_m * table.width_m)
+    angles, modifiers = _beam_modifier(report)
+    return ReportedCollector(
+        eta0=report.eta0 * per_area,
+        a1=report.a1_W_m2K * per_area,
+        a2=report.a2_W_m2K2 * per_area,
+        a3=report.a3_J_m3K * per_area,
+        a4=report.a4 * per_area,
+        a6=report.a6_s_m * per_area,
+        a7=report.a7_J_m3K4 * per_area,
+        a8=report.a8_W_m2K4 * per_area,
+        capacity=None if report.a5_kJ_m2K is None else 1e3 * report.a5_kJ_m2K * per_area,
+        beam_angles_deg=angles,
+        beam_modifiers=modifiers,
+        diffuse_modifier=report.K_diffuse,
+        tested_to=report.tested_to_K,
+        length=table.length_m,
+        width=table.width_m,
+        tilt_deg=scenario.mounting.tilt_deg,
+        fluid=scenario.fluid.name,
+        mass_fraction=scenario.fluid.mass_fraction,
+        flow=scenario.fluid.flow_kg_s_m2,
+        whole_sky=scenario.models.longwave_view == "sky",
+    )
+
+
+def _beam_modifier(report: ReportTable) -> tuple[tuple[float, ...], tuple[float, ...]]:
+    """The modifier as a table to 90 degrees; from b0 it never falls below 0 (Souka & Safwat 1966, as in ASHRAE 93)."""
+    if report.incidence_deg is not None and report.K_beam is not None:
+        ends = () if report.incidence_deg[-1] == 90.0 else (90.0,)
+        return (*report.incidence_deg, *ends), (*report.K_beam, *(0.0 for _ in ends))
+    angles = tuple(float(angle) for angle in range(90))
+    slope = report.b0 or 0.0
+    values = (max(1.0 - slope * (1.0 / math.cos(math.radians(angle)) - 1.0), 0.0) for angle in angles)
+    return (*angles, 90.0), (*values, 0.0)
 
 
 def _cover(table: CoverTable) -> Cover:
@@ -176,7 +276,7 @@ def _cover(table: CoverTable) -> Cover:
 
 
 def _absorber(table: AbsorberTable) -> Absorber:
-    coating = entry("coatings", name=table.coating) if table.coating else table.model_dump()
+    coating, radiating = _coating(table)
     metal = entry("metals", name=table.metal) if table.metal else table.model_dump()
     return Absorber(
         absorptance=coating["absorptance"],
@@ -187,7 +287,37 @@ def _absorber(table: AbsorberTable) -> Absorber:
         outer=table.tube_outer_mm / 1e3,
         inner=table.tube_inner_mm / 1e3,
         bond_resistance=1.0 / table.bond_W_mK if table.bond_W_mK else 0.0,
+        radiating=radiating,
     )
+
+
+def _coating(table: AbsorberTable) -> tuple[dict[str, Any], EmittanceCurve | None]:
+    """Absorptance and emittance, and the emittance over temperature where the scenario names spectra."""
+    if table.coating:
+        return entry("coatings", name=table.coating), None
+    if not table.reflectance_csv and not table.stack:
+        return table.model_dump(), None
+    if table.surface is None:
+        what, do = "its spectrum has not been read", "read the scenario from its file"
+        raise InputError(Problem(where="collector.absorber", what=what, do=do))
+    return values_of(table.surface), table.surface.radiating
+
+
+def values_of(surface: Surface) -> dict[str, float]:
+    """Absorptance, and the emittance at 100 C that stands for the whole curve where one number is wanted.
+
+    Parameters
+    ----------
+    surface
+        Read.
+
+    Returns
+    -------
+    dict
+        Keys as in the scenario file.
+    """
+    eps, _ = surface.radiating(np.array([REFERENCE]))
+    return {"absorptance": surface.absorptance, "emittance": float(eps[0])}
 
 
 def _casing(table: CasingTable, *, length: float, width: float) -> tuple[float, float]:
@@ -198,8 +328,7 @@ def _casing(table: CasingTable, *, length: float, width: float) -> tuple[float, 
     return back, edge * rim / (length * width)
 
 
-def _materials(table: CollectorTable) -> Materials:
-    absorber, casing = table.absorber, table.casing
+def _materials(table: CollectorTable, absorber: AbsorberTable, casing: CasingTable) -> Materials:
     rim = 2.0 * (table.length_m + table.width_m) * casing.edge_height_mm / 1e3 / (table.length_m * table.width_m)
     plate = _heat(absorber.heat_capacity_kJ_m3K, "metals", absorber.metal, key="heat_capacity_kJ_m3K")
     back = _heat(casing.back_heat_capacity_kJ_m3K, "insulation", casing.back_insulation, key="heat_capacity_kJ_m3K")

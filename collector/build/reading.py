@@ -5,14 +5,15 @@ from __future__ import annotations
 import difflib
 import re
 import tomllib
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from pathlib import Path
 from typing import Any, get_args
 
 from pydantic import BaseModel, ValidationError
 from pydantic.fields import FieldInfo
 
-from collector.build.scenario import RIVALS, Scenario
+from collector.build.attached import attached
+from collector.build.scenario import COMPANIONS, RIVALS, Scenario
 from weather.errors import InputError, Problem
 
 __all__ = ["read_scenario"]
@@ -51,11 +52,24 @@ def read_scenario(path: Path, *, overrides: Sequence[str] = ()) -> Scenario:
     lines = _lines(text)
     options = [_override(given, option=option, lines=lines) for option in overrides]
     try:
-        return Scenario.model_validate(given)
+        return attached(
+            Scenario.model_validate(given), where=_where(path, lines=lines, options=options), base=path.parent
+        )
     except ValidationError as found:
         problems = [_problem(error, given=given, path=path, lines=lines, options=options) for error in found.errors()]
         unique = {str(problem): problem for _, problem in sorted(problems, key=lambda pair: pair[0])}
         raise InputError(list(unique.values())) from None
+
+
+def _where(path: Path, *, lines: Mapping[Key, int], options: Sequence[Key]) -> Callable[[Key], str]:
+    """File and line of a key, or the option that set it."""
+
+    def where(key: Key) -> str:
+        if any(key[: len(option)] == option for option in options):
+            return "--set"
+        return f"{path}:{line}" if (line := _line_of(key, lines=lines)) else str(path)
+
+    return where
 
 
 def _text(path: Path) -> str:
@@ -152,7 +166,8 @@ def _drop_rivals(table: dict[str, Any], *, key: str) -> None:
     for sets in RIVALS.values():
         if any(key in keys for keys in sets) and not (key == "emittance" and "glass" in table):
             for other in (name for keys in sets if key not in keys for name in keys):
-                table.pop(other, None)
+                for name in (other, *COMPANIONS.get(other, ())):
+                    table.pop(name, None)
 
 
 def _value(text: str) -> Any:

@@ -3,19 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import pairwise
 from typing import Annotated, Any, Literal
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, WithJsonSchema, model_validator
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, PrivateAttr, WithJsonSchema, model_validator
 from pydantic_core import PydanticCustomError
 
 from collector.build.catalogue import shelf
+from collector.build.surfaces import Surface
 from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import freezing_point
 from collector.physics.glazing import slab_from_normal
 from weather.plane import MODELS as TILTED_SKY_MODELS
 from weather.sky import MODELS as SKY_MODELS
 
-__all__ = ["CHOICES", "RIVALS", "AbsorberTable", "CasingTable", "CoverTable", "Scenario"]
+__all__ = ["CHOICES", "COMPANIONS", "RIVALS", "AbsorberTable", "CasingTable", "CoverTable", "Scenario"]
 
 CHOICES = {  # every step with a choice: its accepted names, each with its source; the schema's literals are held to them
     "wind": {name: relation.source for name, relation in WIND_RELATIONS.items()},
@@ -37,12 +39,14 @@ CHOICES = {  # every step with a choice: its accepted names, each with its sourc
 RIVALS: dict[str, tuple[tuple[str, ...], ...]] = {  # sets of keys of a table of which exactly one set is to be given
     "operation": (("inlet_C",), ("mean_C",)),
     "cover": (("refractive_index", "extinction_per_m", "thickness_mm"), ("transmittance", "reflectance"), ("glass",)),
-    "coating": (("absorptance", "emittance"), ("coating",)),
+    "coating": (("absorptance", "emittance"), ("coating",), ("reflectance_csv",), ("stack",)),
     "metal": (("conductivity_W_mK",), ("metal",)),
     "back": (("back_conductivity_W_mK",), ("back_insulation",)),
     "edge": (("edge_conductivity_W_mK",), ("edge_insulation",)),
     "wind": (("wind_factor",), ("wind_height_m",)),
+    "incidence": (("b0",), ("incidence_deg", "K_beam")),
 }
+COMPANIONS = {"reflectance_csv": ("hemispherical",)}  # keys that mean nothing without another
 MOST_COVERS = 3
 
 
@@ -150,12 +154,29 @@ class CoverTable(_Table):
             raise _fault(f"{reason}", key="transmittance", allowed="together at most 1", got=got) from None
 
 
+_Files = Annotated[
+    list[Annotated[str, Field(min_length=1)]],
+    Field(min_length=1, max_length=10),
+    BeforeValidator(lambda given: given if isinstance(given, list) else [given]),
+    WithJsonSchema({"anyOf": [{"type": "string"}, {"type": "array", "items": {"type": "string"}}]}),
+]
+
+
 class AbsorberTable(_Table):
     """Plate, coating and tubes."""
 
     absorptance: float | None = _quantity(0.05, 1.0, "", doc="solar, normal", default=None)
     emittance: float | None = _quantity(0.01, 1.0, "", doc="thermal, hemispherical", default=None)
     coating: str | None = Field(None, description="or: a coating of the catalogue")
+    reflectance_csv: _Files | None = Field(
+        None,
+        description="or: measured reflectance over wavelength, relative to this file; one file or a list to be joined",
+        json_schema_extra={"unit": "", "allowed": "the path of a CSV file, or a list of such paths"},
+    )
+    stack: str | None = Field(None, min_length=1, description="or: a coating layer by layer, a TOML file's path")
+    hemispherical: Literal["metal"] | None = Field(
+        None, description="takes a measured spectrum's emittance from normal to hemispherical, as a metal's"
+    )
     conductivity_W_mK: float | None = _quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)
     metal: str | None = Field(None, description="or: a plate material of the catalogue")
     heat_capacity_kJ_m3K: float | None = _quantity(
@@ -168,6 +189,18 @@ class AbsorberTable(_Table):
     bond_W_mK: float | None = _quantity(
         0.1, 1e5, "W/mK", doc="bond conductance; a perfect bond if absent", default=None
     )
+    _surface: Surface | None = PrivateAttr(default=None)
+
+    @property
+    def surface(self) -> Surface | None:
+        """What the files of ``reflectance_csv`` or ``stack`` hold, once they are read."""
+        return self._surface
+
+    def with_surface(self, surface: Surface) -> AbsorberTable:
+        """Return the same table with its files' content."""
+        table = self.model_copy()
+        table._surface = surface
+        return table
 
     @model_validator(mode="after")
     def _check(self) -> AbsorberTable:
@@ -175,6 +208,8 @@ class AbsorberTable(_Table):
         self._one_of(RIVALS["metal"])
         self._named("coating", kind="coatings")
         self._named("metal", kind="metals")
+        if self.hemispherical is not None and self.reflectance_csv is None:
+            raise _fault("corrects a measured spectrum only", key="hemispherical", allowed="with reflectance_csv")
         if self.tube_inner_mm >= self.tube_outer_mm:
             got, allowed = f"{self.tube_inner_mm:g} mm", f"below tube_outer_mm, {self.tube_outer_mm:g} mm"
             raise _fault("tube without a wall", key="tube_inner_mm", allowed=allowed, got=got)
@@ -206,6 +241,46 @@ class CasingTable(_Table):
         return self
 
 
+class ReportTable(_Table):
+    """A collector known by its test report: coefficients of ISO 9806:2017, between mean fluid and air temperature."""
+
+    eta0: float = _quantity(0.05, 1.0, "", doc="peak efficiency for beam at normal incidence")
+    a1_W_m2K: float = _quantity(0.0, 60.0, "W/m2K", doc="heat loss coefficient")
+    a2_W_m2K2: float = _quantity(0.0, 1.0, "W/m2K2", doc="its rise with temperature", default=0.0)
+    a3_J_m3K: float = _quantity(0.0, 20.0, "J/m3K", doc="heat loss's dependence on wind", default=0.0)
+    a4: float = _quantity(0.0, 1.5, "", doc="dependence on long wave", default=0.0)
+    a5_kJ_m2K: float | None = _quantity(
+        0.1, 200.0, "kJ/m2K", doc="effective heat capacity; not counted if absent", default=None
+    )
+    a6_s_m: float = _quantity(0.0, 0.2, "s/m", doc="peak efficiency's dependence on wind", default=0.0)
+    a7_J_m3K4: float = _quantity(-1.0, 1.0, "", doc="long wave's dependence on wind", default=0.0)
+    a8_W_m2K4: float = _quantity(0.0, 1e-4, "W/m2K4", doc="radiation loss", default=0.0)
+    b0: float | None = _quantity(0.0, 0.6, "", doc="beam incidence modifier 1 - b0 (1/cos - 1)", default=None)
+    incidence_deg: list[Annotated[float, Field(ge=0.0, le=90.0)]] | None = Field(
+        None, description="or: angles of the beam incidence modifier, rising", json_schema_extra={"unit": "deg"}
+    )
+    K_beam: list[Annotated[float, Field(ge=0.0, le=1.5)]] | None = Field(
+        None, description="modifier at those angles", json_schema_extra={"unit": ""}
+    )
+    K_diffuse: float | None = _quantity(
+        0.1, 1.2, "", doc="diffuse modifier; integrated from the beam's if absent", default=None
+    )
+    area_m2: float = _quantity(0.01, 1000.0, "m2", doc="of a module, that the coefficients refer to")
+    tested_to_K: float | None = _quantity(5.0, 400.0, "K", doc="highest mean fluid above air in the test", default=None)
+
+    @model_validator(mode="after")
+    def _check(self) -> ReportTable:
+        self._one_of(RIVALS["incidence"])
+        angles, values = self.incidence_deg, self.K_beam
+        if angles is not None and values is not None:
+            if len(angles) != len(values) or len(angles) < 2:
+                got, allowed = f"{len(angles)} angles, {len(values)} values", "as many values as angles, at least two"
+                raise _fault("does not fit incidence_deg", key="K_beam", allowed=allowed, got=got)
+            if any(later <= earlier for earlier, later in pairwise(angles)):
+                raise _fault("angles must rise", key="incidence_deg", allowed="rising from 0", got=str(angles))
+        return self
+
+
 class CollectorTable(_Table):
     """The module and how many of it."""
 
@@ -225,19 +300,40 @@ class CollectorTable(_Table):
     cover: list[CoverTable] = Field(
         default_factory=list, max_length=MOST_COVERS, description="outermost first; none is an unglazed collector"
     )
-    absorber: AbsorberTable
-    casing: CasingTable
+    absorber: AbsorberTable | None = Field(None, description="plate, coating and tubes")
+    casing: CasingTable | None = Field(None, description="insulation")
+    tested: ReportTable | None = Field(
+        None, description="or: the coefficients of a test report, in place of all of these"
+    )
 
     @model_validator(mode="after")
     def _check(self) -> CollectorTable:
+        self._check_kind()
         area = self.length_m * self.width_m
         if self.gross_area_m2 is not None and self.gross_area_m2 < area:
             got, allowed = f"{self.gross_area_m2:g} m2", f"at least length x width, {area:g} m2"
             raise _fault("gross area smaller than the collector", key="gross_area_m2", allowed=allowed, got=got)
-        if self.absorber.tube_pitch_mm > self.width_m * 1e3:
+        if self.absorber is not None and self.absorber.tube_pitch_mm > self.width_m * 1e3:
             got, allowed = f"{self.absorber.tube_pitch_mm:g} mm", f"at most width_m, {self.width_m * 1e3:g} mm"
             raise _fault("not one tube in the width", key="absorber.tube_pitch_mm", allowed=allowed, got=got)
         return self
+
+    def _check_kind(self) -> None:
+        """A build sheet or a test report, and not both."""
+        given = [key for key in ("absorber", "casing") if getattr(self, key) is not None] + (
+            ["cover"] if self.cover else []
+        )
+        if self.tested is not None and (given or self.capacity_kJ_m2K is not None):
+            got = ", ".join(["tested", *given, *(["capacity_kJ_m2K"] if self.capacity_kJ_m2K is not None else [])])
+            allowed = "a test report, or cover, absorber and casing"
+            raise _fault("keys that exclude each other", key="tested", allowed=allowed, got=got)
+        for key in ("absorber", "casing"):
+            if self.tested is None and key not in given:
+                raise _fault(
+                    "required key missing",
+                    key=key,
+                    allowed="[collector.absorber] and [collector.casing], or [collector.tested]",
+                )
 
 
 class FluidTable(_Table):

@@ -32,7 +32,7 @@ def parallel_plates_factor(eps_1: float, eps_2: float) -> float:
     return 1.0 / (1.0 / eps_1 + 1.0 / eps_2 - 1.0)
 
 
-def radiative_flux(t_from: Floats, t_to: Floats, *, factor: float) -> tuple[Floats, Floats, Floats]:
+def radiative_flux(t_from: Floats, t_to: Floats, *, factor: float | Floats) -> tuple[Floats, Floats, Floats]:
     """Net long-wave flux between two surfaces, with its slopes.
 
     Parameters
@@ -40,12 +40,13 @@ def radiative_flux(t_from: Floats, t_to: Floats, *, factor: float) -> tuple[Floa
     t_from, t_to
         Temperatures, shape ``(n,)`` [K].
     factor
-        Exchange factor, emittance times view factor for a small surface in large surroundings.
+        Exchange factor, emittance times view factor for a small surface in large surroundings; one, or ``(n,)``.
 
     Returns
     -------
     tuple
-        Flux from the first to the second [W/m2] and its derivatives to ``t_from`` and ``t_to`` [W/m2K], each ``(n,)``.
+        Flux from the first to the second [W/m2] and its derivatives to ``t_from`` and ``t_to`` at this factor [W/m2K], each
+        ``(n,)``.
 
     Notes
     -----

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -240,7 +241,12 @@ class EmittanceCurve:
 
 
 def emittance_function(
-    spectrum: Spectrum, *, t_least: float = 230.0, t_most: float = 700.0, step: float = 5.0
+    spectrum: Spectrum,
+    *,
+    t_least: float = 230.0,
+    t_most: float = 700.0,
+    step: float = 5.0,
+    corrected: Callable[[Floats], Floats] | None = None,
 ) -> EmittanceCurve:
     """A cheap stand-in for `emittance`, with its slope.
 
@@ -252,6 +258,8 @@ def emittance_function(
         Range [K].
     step
         Of the table, about [K].
+    corrected
+        Of the emittance, such as from normal to hemispherical; none if left out.
 
     Returns
     -------
@@ -260,13 +268,18 @@ def emittance_function(
     """
     nodes = np.linspace(t_least, t_most, max(round((t_most - t_least) / step), 1) + 1)
     gap, nudge = nodes[1] - nodes[0], 0.05
-    value, above, below = (emittance(spectrum, t=nodes + shift).value for shift in (0.0, nudge, -nudge))
+
+    def exact(t: Floats) -> Floats:
+        found = emittance(spectrum, t=t).value
+        return found if corrected is None else corrected(found)
+
+    value, above, below = (exact(nodes + shift) for shift in (0.0, nudge, -nudge))
     rise, slope = np.diff(value), (above - below) * (0.5 * gap / nudge)
     left, right = slope[:-1], slope[1:]
     cubics = np.stack((value[:-1], left, 3.0 * rise - 2.0 * left - right, left + right - 2.0 * rise))
     draft = EmittanceCurve(t_least=t_least, t_most=t_most, cubics=cubics, error=0.0)
     between = nodes[:-1] + 0.5 * gap
-    error = float(np.abs(draft(between)[0] - emittance(spectrum, t=between).value).max())
+    error = float(np.abs(draft(between)[0] - exact(between)).max())
     return EmittanceCurve(t_least=t_least, t_most=t_most, cubics=cubics, error=error)
 
 

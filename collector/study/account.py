@@ -10,7 +10,8 @@ import numpy as np
 from scipy.constants import zero_Celsius
 
 from collector.balance.capacity import held_heat
-from collector.balance.losses import Network, network_of
+from collector.balance.losses import Network
+from collector.balance.model import Model, model_of
 from collector.balance.operated import Operated
 from collector.balance.optics import optics_of
 from collector.balance.steady import SteadyState
@@ -94,22 +95,27 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         Its weather, its collector at normal incidence, and what the weather reader had to say.
     """
     weather = open_scenario_weather(scenario, base=base)
-    collector = collector_of(scenario)
-    plate, *covers = optics_of(collector).beam(np.zeros(1))[:, 0].tolist()
+    model = model_of(collector_of(scenario), pressure=weather.pressure)
     held = {key: getattr(scenario.operation, key) for key in ("inlet_C", "mean_C")}
     return {
         "title": scenario.title,
         **{key: value for key, value in held.items() if value is not None},
-        "area_m2": scenario.collector.modules * collector.area,
-        "normal_absorptance_plate": plate,
-        "normal_absorptance_covers": covers,
-        "U_back_W_m2K": collector.u_back,
-        "U_edge_W_m2K": collector.u_edge,
-        "heat_held": _capacity(collector, network_of(collector, pressure=weather.pressure)),
+        "area_m2": scenario.collector.modules * model.collector.area,
+        "normal_absorptance_plate": _at_normal(model),
+        "U_back_W_m2K": model.network.u_back,
+        "U_edge_W_m2K": model.network.u_edge,
+        "heat_held": _capacity(model),
         "weather": _weather(weather, scenario),
         "models": _models(scenario),
         "notices": list(weather.notices),
     }
+
+
+def _at_normal(model: Model) -> float:
+    """Share of beam at normal incidence that the plate takes up; of a test report, its peak efficiency."""
+    if isinstance(model.collector, Collector):
+        return float(optics_of(model.collector).beam(np.zeros(1))[0, 0])
+    return model.collector.eta0
 
 
 def _models(scenario: Scenario) -> dict[str, Any]:
@@ -140,20 +146,27 @@ def _account(year: HeatYear, scenario: Scenario, *, hours: Operated, still: Stea
 
 def _heat_held(year: HeatYear, without: HeatYear) -> dict[str, Any]:
     """What the collector holds, where that comes from, and what warming it up cost."""
-    found = _capacity(year.conditions.collector, year.conditions.network)
+    found = _capacity(year.conditions.model)
     if year.drift:
         found["warming_up_kWh_m2"] = without.useful_kWh_m2 - year.useful_kWh_m2
     return found
 
 
-def _capacity(collector: Collector, network: Network) -> dict[str, Any]:
-    total, parts = collector.capacity, held_heat(collector, network)
-    if total is None and parts is None:
-        return {"capacity_kJ_m2K": None, "from": "not known", "warming_up_kWh_m2": None}
-    if total is not None or parts is None:
-        return {"capacity_kJ_m2K": (total or 0.0) / 1e3, "from": "the scenario", "warming_up_kWh_m2": None}
-    each = {f"{name}_kJ_m2K": value / 1e3 for name, value in parts._asdict().items()}
-    return {"capacity_kJ_m2K": parts.total / 1e3, "from": "the materials", **each, "warming_up_kWh_m2": None}
+def _capacity(model: Model) -> dict[str, Any]:
+    """Heat held per kelvin, and what it consists of where that is known."""
+    found: dict[str, Any] = {"capacity_kJ_m2K": None, "from": "not known", "warming_up_kWh_m2": None}
+    if model.capacity is None:
+        return found
+    found |= {"capacity_kJ_m2K": model.capacity / 1e3, "from": "the scenario"}
+    if (
+        isinstance(model.collector, Collector)
+        and isinstance(model.network, Network)
+        and model.collector.capacity is None
+    ):
+        parts = held_heat(model.collector, model.network)
+        each = parts._asdict() if parts else {}
+        found |= {"from": "the materials", **{f"{name}_kJ_m2K": value / 1e3 for name, value in each.items()}}
+    return found
 
 
 def _tidy(celsius: float) -> float:

@@ -7,12 +7,15 @@ from collections.abc import Iterator
 import numpy as np
 from scipy.constants import zero_Celsius
 
-from collector.balance.losses import gap_rayleigh
+from collector.balance.losses import Network, gap_rayleigh
 from collector.balance.operated import Operated
+from collector.balance.reported import diffuse_modifier
 from collector.balance.steady import SteadyState, Stream
+from collector.build.collector import ReportedCollector
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import valid_range
+from collector.study.point import BY_REPORT
 from collector.study.year import HeatYear, wind_at_collector
 from weather.sky import DEW_POINT_RANGE, NEEDS
 from weather.year import Floats, Mask
@@ -52,6 +55,7 @@ def notices_of(year: HeatYear, scenario: Scenario, *, hours: Operated, still: St
         *_wind(year, scenario, on=hours.on),
         *_sky(year, scenario, on=hours.on),
         *_gaps(year, hours),
+        *_report(year, hours),
     ]
 
 
@@ -106,11 +110,29 @@ def _sky(year: HeatYear, scenario: Scenario, *, on: Mask) -> Iterator[str]:
 
 
 def _gaps(year: HeatYear, hours: Operated) -> Iterator[str]:
-    conditions = year.conditions
-    rows: list[Floats] = gap_rayleigh(conditions.network, nodes=hours.nodes[:, hours.on])
-    for number, (gap, rayleigh) in enumerate(zip(conditions.network.gaps, rows, strict=True), start=1):
+    network = year.conditions.model.network
+    if not isinstance(network, Network):
+        return
+    rows: list[Floats] = gap_rayleigh(network, nodes=hours.nodes[:, hours.on])
+    for number, (gap, rayleigh) in enumerate(zip(network.gaps, rows, strict=True), start=1):
         above = np.count_nonzero(rayleigh > HIGHEST_RAYLEIGH)
         if above:
             yield f"gap {number}: {above} running h with a Rayleigh number above 1e5, extrapolated"
         if gap.aspect < LEAST_ASPECT:
             yield f"gap {number}: length over thickness {gap.aspect:.1f}, relation found from {LEAST_ASPECT:.0f}: extrapolated"
+
+
+def _report(year: HeatYear, hours: Operated) -> Iterator[str]:
+    report = year.conditions.model.collector
+    if not isinstance(report, ReportedCollector):
+        return
+    yield BY_REPORT
+    above = hours.t_mean[hours.on] - year.conditions.around.t_air[hours.on]
+    if report.tested_to is None:
+        farthest = above.max(initial=0.0)
+        yield f"the scenario does not say how far the report was tested (tested_to_K); running hours go to {farthest:.0f} K"
+    elif (above > report.tested_to).any():
+        beyond = np.count_nonzero(above > report.tested_to)
+        yield f"{beyond} running h beyond the tested {report.tested_to:g} K above the air (to {above.max():.0f} K), extrapolated"
+    if report.diffuse_modifier is None:
+        yield f"no K_diffuse in the report: {diffuse_modifier(report):.3f}, the beam's integrated over the hemisphere"

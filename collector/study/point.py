@@ -8,10 +8,10 @@ from typing import Any
 import numpy as np
 from scipy.constants import atm, zero_Celsius
 
-from collector.balance.losses import Surroundings, network_of
-from collector.balance.optics import absorbed_power, optics_of
-from collector.balance.steady import Feed, SteadyState, Uptake, solve_running, solve_stagnation, stream_of
-from collector.build.collector import collector_of
+from collector.balance.losses import Surroundings
+from collector.balance.model import model_of
+from collector.balance.steady import Feed, SteadyState, solve_running, solve_stagnation
+from collector.build.collector import Collector, collector_of
 from collector.build.scenario import Scenario
 from collector.physics.fluids import freezing_point, valid_range
 from collector.study.cautions import at_stagnation, when_running
@@ -19,8 +19,9 @@ from collector.study.year import wind_coefficient
 from weather.errors import InputError, Problem
 from weather.plane import PlaneIrradiance
 
-__all__ = ["Point", "solve_point"]
+__all__ = ["BY_REPORT", "Point", "solve_point"]
 
+BY_REPORT = "a test report gives one loss from the mean fluid: it stands under front convection, and the plate is the mean fluid"
 BOUNDS = {
     "beam": (0.0, 1500.0, "W/m2"),
     "sky_diffuse": (0.0, 1500.0, "W/m2"),
@@ -105,28 +106,27 @@ def solve_point(scenario: Scenario, point: Point) -> dict[str, Any]:
     InputError
         The fluid would be frozen.
     """
-    collector = collector_of(scenario)
     pressure, said = _pressure(scenario.place.altitude_m)
+    model = model_of(collector_of(scenario), pressure=pressure)
     around = _around(scenario, point)
-    absorbed = absorbed_power(optics_of(collector), _on_plane(point))
-    network = network_of(collector, pressure=pressure)
+    absorbed = model.absorbed(_on_plane(point), around)
     feed = _feed(scenario, point)
     if feed is None:
-        state = solve_stagnation(network, around, absorbed)
+        state = solve_stagnation(model.network, around, absorbed)
     else:
-        uptake = Uptake(collector=collector, stream=stream_of(collector), feed=feed)
-        state = solve_running(network, around, absorbed, uptake=uptake)
+        state = solve_running(model.network, around, absorbed, uptake=model.uptake(feed))
+    by_build = isinstance(model.collector, Collector)
     return {
         "title": scenario.title,
         **_temperatures(state, feed),
         "irradiance_W_m2": point.irradiance,
         "absorbed_W_m2": float(absorbed.plate[0]),
         **_fluxes(state, point),
-        **_coefficients(state, feed, t_air=point.air + zero_Celsius),
+        **_coefficients(state, feed, t_air=point.air + zero_Celsius, by_build=by_build),
         "residual_W_m2": float(state.residual[0]),
         "converged": bool(state.converged[0]),
         "pressure_Pa": pressure,
-        "notices": [said, *_notices(scenario, state, feed)],
+        "notices": [said, *([] if by_build else [BY_REPORT]), *_notices(scenario, state, feed)],
         "cautions": _cautions(scenario, state, feed),
     }
 
@@ -141,7 +141,8 @@ def _pressure(altitude: float | None) -> tuple[float, str]:
 
 def _around(scenario: Scenario, point: Point) -> Surroundings:
     one = {name: np.array([getattr(point, key) + zero_Celsius]) for name, key in _TEMPERATURES.items()}
-    return Surroundings(**one, h_wind=wind_coefficient(scenario, np.array([point.wind])))
+    wind = np.array([point.wind])
+    return Surroundings(**one, h_wind=wind_coefficient(scenario, wind), wind=wind)
 
 
 _TEMPERATURES = {"t_air": "air", "t_sky": "sky_temp", "t_ground": "ground_temp"}
@@ -193,7 +194,7 @@ def _fluxes(state: SteadyState, point: Point) -> dict[str, Any]:
     }
 
 
-def _coefficients(state: SteadyState, feed: Feed | None, *, t_air: float) -> dict[str, Any]:
+def _coefficients(state: SteadyState, feed: Feed | None, *, t_air: float, by_build: bool) -> dict[str, Any]:
     above = float(state.t_plate[0]) - t_air
     over = (lambda loss: float(loss[0]) / above) if abs(above) > 1e-3 else (lambda _: None)
     return {
@@ -201,8 +202,8 @@ def _coefficients(state: SteadyState, feed: Feed | None, *, t_air: float) -> dic
         "U_loss_W_m2K": float(state.slope[0]),
         "U_top_secant_W_m2K": over(state.losses.top),
         "U_loss_secant_W_m2K": over(state.losses.total),
-        "F_prime": float(state.f_prime[0]) if feed else None,
-        "F_R": float(state.f_r[0]) if feed else None,
+        "F_prime": float(state.f_prime[0]) if feed and by_build else None,
+        "F_R": float(state.f_r[0]) if feed and by_build else None,
     }
 
 

@@ -3,19 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
 from scipy.constants import zero_Celsius
 
-from collector.balance.capacity import held_heat
-from collector.balance.losses import Network, Surroundings, network_of
+from collector.balance.losses import Surroundings
+from collector.balance.model import Model, model_of
 from collector.balance.operated import Operated, operated_steadily
-from collector.balance.optics import Absorbed, absorbed_power, optics_of
-from collector.balance.steady import Feed, SteadyState, Stream, Uptake, operate, solve_stagnation, stream_of
+from collector.balance.optics import Absorbed
+from collector.balance.steady import Feed, SteadyState, Uptake, operate, solve_stagnation
 from collector.balance.transient import solve_drift
-from collector.build.collector import Collector, collector_of
+from collector.build.collector import collector_of
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
 from weather.errors import InputError, Problem
@@ -46,19 +46,15 @@ class Conditions:
     ----------
     weather, plane, around, absorbed
         What the hours bring.
-    collector, network
+    model
         What is solved.
-    capacity
-        Heat held per kelvin of the plate, None where not known or left out [J/m2K].
     """
 
     weather: WeatherYear
     plane: PlaneIrradiance
     around: Surroundings
     absorbed: Absorbed
-    collector: Collector
-    network: Network
-    capacity: float | None
+    model: Model
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -118,39 +114,23 @@ def heat_years(
     list of HeatYear
         In the scenario's order of temperatures.
     """
-    collector = collector_of(scenario)
     sun = sun or sun_position(weather)
+    model = model_of(collector_of(scenario), pressure=weather.pressure)
     plane = _plane(scenario, weather=weather, sun=sun)
-    absorbed = absorbed_power(optics_of(collector), plane)
     around = _surroundings(scenario, weather=weather, sun=sun)
-    network, stream = network_of(collector, pressure=weather.pressure), stream_of(collector)
-    conditions = Conditions(
-        weather=weather,
-        plane=plane,
-        around=around,
-        absorbed=absorbed,
-        collector=collector,
-        network=network,
-        capacity=_capacity(collector, network) if held else None,
-    )
-    return [_at(conditions, uptake) for uptake in _uptakes(scenario, collector, stream)]
+    absorbed = model.absorbed(plane, around)
+    model = model if held else replace(model, capacity=None)
+    conditions = Conditions(weather=weather, plane=plane, around=around, absorbed=absorbed, model=model)
+    return [_at(conditions, uptake) for uptake in _uptakes(scenario, model)]
 
 
 def _at(conditions: Conditions, uptake: Uptake) -> HeatYear:
-    network, around, absorbed = conditions.network, conditions.around, conditions.absorbed
-    if conditions.capacity is not None:
-        drift = solve_drift(network, around, absorbed, capacity=conditions.capacity, uptake=uptake)
+    network, around, absorbed = conditions.model.network, conditions.around, conditions.absorbed
+    if conditions.model.capacity is not None:
+        drift = solve_drift(network, around, absorbed, capacity=conditions.model.capacity, uptake=uptake)
         return HeatYear(conditions=conditions, uptake=uptake, running=None, on=None, drift=drift)
     running, on = operate(network, around, absorbed, uptake=uptake)
     return HeatYear(conditions=conditions, uptake=uptake, running=running, on=on, drift=None)
-
-
-def _capacity(collector: Collector, network: Network) -> float | None:
-    """Heat held per kelvin: as given, or from the materials where all are known [J/m2K]."""
-    if collector.capacity is not None:
-        return collector.capacity
-    held = held_heat(collector, network)
-    return None if held is None else held.total
 
 
 def standing(conditions: Conditions) -> SteadyState:
@@ -166,14 +146,13 @@ def standing(conditions: Conditions) -> SteadyState:
     SteadyState
         All n hours.
     """
-    return solve_stagnation(conditions.network, conditions.around, conditions.absorbed)
+    return solve_stagnation(conditions.model.network, conditions.around, conditions.absorbed)
 
 
-def _uptakes(scenario: Scenario, collector: Collector, stream: Stream) -> Iterator[Uptake]:
+def _uptakes(scenario: Scenario, model: Model) -> Iterator[Uptake]:
     operation = scenario.operation
-    pump = {"start_above": operation.start_K or 0.0, "stop_above": operation.stop_K or 0.0}
     for feed in _feeds(scenario):
-        yield Uptake(collector=collector, stream=stream, feed=feed, **pump)
+        yield model.uptake(feed, start_above=operation.start_K or 0.0, stop_above=operation.stop_K or 0.0)
 
 
 def _feeds(scenario: Scenario) -> Iterator[Feed]:
@@ -286,4 +265,5 @@ def _surroundings(scenario: Scenario, *, weather: WeatherYear, sun: Sun) -> Surr
         t_sky=np.asarray(t_sky),
         t_ground=weather.t_air,
         h_wind=wind_coefficient(scenario, wind),
+        wind=wind,
     )

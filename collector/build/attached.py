@@ -1,0 +1,66 @@
+"""Files that a scenario names for its plate, read and attached to it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from collector.build.scenario import AbsorberTable, Scenario
+from collector.build.surfaces import Surface, read_surface
+from weather.errors import InputError, Problem
+
+__all__ = ["attached"]
+
+KEY = ("collector", "absorber")
+
+
+def attached(scenario: Scenario, *, where: Callable[[tuple[str | int, ...]], str], base: Path) -> Scenario:
+    """Scenario with the spectrum or the stack that it names.
+
+    Parameters
+    ----------
+    scenario
+        Checked.
+    where
+        Place of a key in the scenario's text.
+    base
+        Folder that the files' paths count from.
+
+    Returns
+    -------
+    Scenario
+        The same one where it names none.
+
+    Raises
+    ------
+    InputError
+        A file is not there, or is wrong.
+    """
+    absorber = scenario.collector.absorber
+    if absorber is None or not (absorber.reflectance_csv or absorber.stack):
+        return scenario
+    table = absorber.with_surface(_surface(absorber, where=where, base=base))
+    return scenario.model_copy(update={"collector": scenario.collector.model_copy(update={"absorber": table})})
+
+
+def _surface(absorber: AbsorberTable, *, where: Callable[[tuple[str | int, ...]], str], base: Path) -> Surface:
+    key = "stack" if absorber.stack else "reflectance_csv"
+    names = [absorber.stack] if absorber.stack else absorber.reflectance_csv or []
+    place = where((*KEY, key))
+    faults = [
+        Problem(
+            where=place, what=f"{'.'.join(KEY)}.{key}: no such file", got=repr(name), do=f"looked for {base / name}"
+        )
+        for name in names
+        if not (base / name).is_file()
+    ]
+    wrong = [name for name in names if (Path(name).suffix.lower() == ".toml") != (key == "stack")]
+    allowed = "a TOML file" if key == "stack" else "CSV files; a stack in TOML goes under stack"
+    faults += [
+        Problem(where=place, what=f"{'.'.join(KEY)}.{key}: wrong kind of file", got=repr(name), allowed=allowed)
+        for name in wrong
+        if (base / name).is_file()
+    ]
+    if faults:
+        raise InputError(faults)
+    return read_surface([base / name for name in names], metal=absorber.hemispherical == "metal")
