@@ -74,7 +74,7 @@ def _emit(content: dict[str, Any], *, text: Callable[[], str], as_json: bool) ->
     help="Also write summary.json, months.csv, hours.csv and two figures a run.",
 )
 @_json
-def year(scenarios: tuple[Path, ...], overrides: tuple[str, ...], out: Path | None, as_json: bool) -> None:  # noqa: FBT001 # click's calling form
+def year(scenarios: tuple[Path, ...], overrides: tuple[str, ...], out: Path | None, as_json: bool) -> None:
     """The year of heat: totals, months, where the sunlight went.
 
     Several scenarios, or several temperatures in one, give a comparison.
@@ -145,7 +145,7 @@ def _write(runs: list[Run], content: dict[str, Any], *, out: Path) -> None:
 @click.option("--stagnation", is_flag=True, help="Or: no flow.")
 @_set
 @_json
-def point(scenario: Path, overrides: tuple[str, ...], stagnation: bool, as_json: bool, **given: float | None) -> None:  # noqa: FBT001
+def point(scenario: Path, overrides: tuple[str, ...], stagnation: bool, as_json: bool, **given: float | None) -> None:
     """One operating point by hand.
 
     U values are slopes at the plate's temperature; F' and F_R belong to that slope. The scenario's weather is not read.
@@ -166,9 +166,62 @@ def point(scenario: Path, overrides: tuple[str, ...], stagnation: bool, as_json:
 
 
 @main.command()
+@click.argument("scenarios", metavar="SCENARIO...", nargs=-1, required=True, type=click.Path(path_type=Path))
+@click.option("--irradiance", type=float, default=1000.0, show_default=True, help="Beam on the plane, W/m2.")
+@click.option("--air", type=float, default=20.0, show_default=True, help="Air temperature, C.")
+@click.option("--wind", type=float, default=3.0, show_default=True, help="Wind at the collector, m/s.")
+@click.option("--sky-temp", type=float, help="Sky temperature, C; if not given, long wave 100 W/m2 below the air's.")
+@click.option("--to", type=float, help="Highest mean fluid above the air, K; 80 if the fluid's data go so far.")
+@click.option("--at", type=float, default=40.0, show_default=True, help="Working point to read off, K above the air.")
+@click.option("--terms", is_flag=True, help="Fit wind and long-wave terms too.")
+@click.option(
+    "--out", type=click.Path(path_type=Path), metavar="DIR", help="Also write curve.json, points.csv and the figure."
+)
+@_set
+@_json
+def curve(
+    scenarios: tuple[Path, ...],
+    overrides: tuple[str, ...],
+    terms: bool,
+    out: Path | None,
+    as_json: bool,
+    **given: float | None,
+) -> None:
+    """Efficiency curve, coefficients, incidence modifiers, stagnation.
+
+    As a test laboratory would have them, at normal incidence. Several scenarios overlay in one figure.
+    """
+    from collector.build.reading import read_scenario
+    from collector.show.curve import curve_text
+    from collector.study.curve import Bench, curve_of
+
+    bench = Bench(**given)  # type: ignore[arg-type] # click has seen to the types
+    found = [curve_of(read_scenario(path, overrides=overrides), bench, terms=terms) for path in scenarios]
+    content = {"curves": found}
+    if out is not None:
+        _write_curves(found, content, out=out)
+    _emit(content, text=lambda: "\n".join(curve_text(each) for each in found), as_json=as_json)
+
+
+def _write_curves(curves: list[dict[str, Any]], content: dict[str, Any], *, out: Path) -> None:
+    from collector.show.curve import draw_curves
+    from collector.show.files import csv_text, json_text, open_folder, write_whole
+    from collector.show.plots import save_figure
+
+    open_folder(out)
+    rows = [(number, *point.values()) for number, each in enumerate(curves, start=1) for point in each["points"]]
+    texts = {"curve.json": json_text(content), "points.csv": csv_text(["curve", *curves[0]["points"][0]], rows)}
+    for name, text in texts.items():
+        write_whole(out / name, write=lambda path, text=text: path.write_text(text, encoding="utf-8"))  # type: ignore[misc]
+    figure = draw_curves(curves)
+    write_whole(out / "curve.png", write=lambda path: save_figure(figure, path=path))
+    click.echo(f"written to {out}: {', '.join(texts)}, curve.png", err=True)
+
+
+@main.command()
 @click.argument("file", type=click.Path(path_type=Path))
 @_json
-def new(file: Path, as_json: bool) -> None:  # noqa: FBT001
+def new(file: Path, as_json: bool) -> None:
     """Write a starter scenario, each key explained."""
     from importlib.resources import files
 
@@ -200,7 +253,7 @@ def new(file: Path, as_json: bool) -> None:  # noqa: FBT001
 @_scenario
 @_set
 @_json
-def check(scenario: Path, overrides: tuple[str, ...], as_json: bool) -> None:  # noqa: FBT001
+def check(scenario: Path, overrides: tuple[str, ...], as_json: bool) -> None:
     """Check a scenario and its weather file without solving the year."""
     from collector.build.reading import read_scenario
     from collector.show.tables import check_text
@@ -212,7 +265,7 @@ def check(scenario: Path, overrides: tuple[str, ...], as_json: bool) -> None:  #
 
 @main.command()
 @_json
-def schema(as_json: bool) -> None:  # noqa: FBT001
+def schema(as_json: bool) -> None:
     """Print the scenario file's JSON schema, for editors."""
     del as_json  # it is JSON either way
     from collector.build.scenario import Scenario
@@ -222,7 +275,7 @@ def schema(as_json: bool) -> None:  # noqa: FBT001
 
 @main.command()
 @_json
-def models(as_json: bool) -> None:  # noqa: FBT001
+def models(as_json: bool) -> None:
     """Every relation in use, with its source."""
     from collector.build.relations import relations
     from collector.show.tables import models_text
@@ -234,7 +287,7 @@ def models(as_json: bool) -> None:  # noqa: FBT001
 @main.command()
 @click.argument("shelf", required=False, type=click.Choice(["covers", "coatings", "metals", "insulation"]))
 @_json
-def catalogue(shelf: str | None, as_json: bool) -> None:  # noqa: FBT001
+def catalogue(shelf: str | None, as_json: bool) -> None:
     """Generic materials, with their sources."""
     from collector.build.catalogue import SHELVES
     from collector.build.catalogue import shelf as entries

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -356,12 +357,19 @@ def test_impossible_place_all_at_once(told):
 
 
 def test_no_number_for_a_place(told):
-    assert told(epw_text(epw_rows(), latitude="nan")) == [
-        f"made.dat: header: latitude_deg is impossible; got nan; allowed: -90 to 90; {MEND}"
+    for word in ("nan", "north", ""):
+        assert told(epw_text(epw_rows(), latitude=word)) == [
+            f"made.dat: header: latitude_deg is missing; got no number; allowed: -90 to 90; {MEND}"
+        ]
+    made = Tmy3()
+    made.head = "USAF?,NOWHERE,XX,,36.1,,273"
+    assert [message.partition(";")[0] for message in told(made.text)] == [
+        "made.dat: header: longitude_deg is missing",
+        "made.dat: header: utc_offset_h is missing",
     ]
-    (message,) = told(epw_text(epw_rows(), latitude="north"))
-    assert message.startswith("made.dat: looks like EPW but can't be read as such; got ValueError: ")
-    assert "'north'" in message
+    other = Tmy2()
+    other.head = other.head.replace("N 25 48", "?      ")
+    assert told(other.text) == [f"made.dat: header: latitude_deg is missing; got no number; allowed: -90 to 90; {MEND}"]
 
 
 def test_clock_that_does_not_fit_the_longitude(told):
@@ -397,9 +405,16 @@ def test_values_under_place_are_checked_too(told):
     ]
 
 
-@pytest.mark.xfail(strict=True, raises=InputError, reason="product fault: [place] can't fill a blank in the header")
-def test_values_under_place_fill_a_blank(of):
-    assert of(epw_text(epw_rows(), latitude=""), latitude_deg=45.0).site.latitude_deg == 45.0
+def test_values_under_place_fill_a_blank(of, greensboro):
+    weather = of(epw_text(epw_rows(), latitude=""), latitude_deg=45.0)
+    assert weather.site.latitude_deg == 45.0
+    assert weather.notices == ("latitude_deg as given under [place]; the file has none",)
+    made = Tmy3()
+    made.head = made.head.replace("-5.0", "")
+    assert of(made.text, utc_offset_h=-5.0).site == greensboro.site
+    other = Tmy2()
+    other.head = other.head[:55]  # without its elevation
+    assert of(other.text, altitude_m=2.0).site.altitude_m == 2.0
 
 
 def test_name_in_latin_1(of, plain):
@@ -414,21 +429,23 @@ def test_name_of_a_tmy3_in_latin_1(of):
     assert of(made.text).site.name == "GR\u00dcNBURG PIEDMONT TRIAD INT NC"
 
 
-@pytest.mark.xfail(strict=True, reason="product fault: a name in UTF-8 is read as Latin-1")
 def test_name_in_utf_8(of):
     assert of(epw_text(epw_rows(), city="M\u00fcnster").encode("utf-8")).site.name == "M\u00fcnster"
 
 
-@pytest.mark.xfail(strict=True, raises=InputError, reason="product fault: a byte order mark hides the format")
 def test_byte_order_mark(of):
     assert of(epw_text(epw_rows()).encode("utf-8-sig")).format == "EPW"
 
 
-@pytest.mark.xfail(strict=True, raises=InputError, reason="product fault: pvlib splits a TMY2 name of two words")
-def test_tmy2_name_of_two_words(of):
-    made = Tmy2()
-    made.head = made.head.replace("MIAMI      ", "MIAMI BEACH")
-    assert of(made.text).site.name == "Miami Beach FL"
+@pytest.mark.parametrize(
+    ("name", "read_as"), [("MIAMI BEACH", "Miami Beach FL"), ("MI\u00c5MI      ", "Mi\u00e5mi FL"), (" " * 11, "FL")]
+)
+def test_tmy2_name_that_is_not_one_plain_word(of, name, read_as):
+    made, station = Tmy2(), open_weather("miami", base=Path())
+    made.head = made.head.replace("MIAMI      ", name)
+    weather = of(made.text)
+    assert weather.site == replace(station.site, name=read_as)
+    assert (weather.ghi == station.ghi).all()
 
 
 # --- rows
@@ -461,7 +478,7 @@ def test_row_of_a_tmy2_cut_short(told):
     made.rows[5] = made.rows[5][:40]
     (message,) = told(made.text)
     assert message.startswith("made.dat: looks like TMY2 but can't be read as such; got ValueError: ")
-    assert "Read value is not an integer" in message
+    assert "In made.dat Read value is not an integer" in message  # and no name of the copy that pvlib was given
 
 
 def test_row_cut_short_is_filled_and_counted(of):
@@ -625,11 +642,11 @@ def test_albedo_of_zero_is_no_albedo(of):
     assert of(epw_text(set_epw(epw_rows(), "albedo", hours=range(8760), value="0"))).albedo is None
 
 
-WILD = {  # value in the file, the limits as told, the value as told (temperatures in K)
+WILD = {  # value in the file, the limits as told, the value as told (temperatures in C, as in the file)
     "ghi": ("1601", "-15 to 1600 W/m2", "1601"),
     "dni": ("-16", "-15 to 1500 W/m2", "-16"),
     "dhi": ("1201", "-15 to 1200 W/m2", "1201"),
-    "t_air": ("-95.0", "183.15 to 333.15 K", "178.15"),
+    "t_air": ("-95.0", "-90 to 60 C", "-95"),
     "wind": ("76", "0 to 75 m/s", "76"),
     "longwave": ("39", "40 to 700 W/m2", "39"),
 }
@@ -695,7 +712,9 @@ def test_tmy2_marks_of_missing_values(of):
 # --- stamps
 
 
-@pytest.mark.parametrize(("offset", "found"), [("0.0", -30.0), ("2.0", 90.0), ("1.5", 60.0)])
+@pytest.mark.parametrize(
+    ("offset", "found"), [("0.0", -30.0), ("2.0", 90.0), ("1.5", 60.0), ("4.0", 210.0), ("-2.0", -150.0)]
+)
 def test_wrong_offset_is_found_and_put_right(of, plain, offset, found):
     weather = of(epw_text(epw_rows(), offset=offset))
     assert weather.stamp.rule_min == 30.0
@@ -725,16 +744,45 @@ def test_offset_within_the_tolerance_keeps_the_rule(of, offset):
     assert weather.notices == ()
 
 
-@pytest.mark.xfail(strict=True, reason="product fault: a shift beyond the search's end is extrapolated and used")
-@pytest.mark.parametrize("offset", [-2.0, 4.0])
-def test_offset_too_wrong_to_be_found_is_not_guessed(of, plain, offset):
-    """The search ends at 95 min, and a header passes up to 4 h off: either it is put right or it is refused."""
-    try:
-        weather = of(epw_text(epw_rows(), offset=str(offset)))
-    except InputError:
-        return
-    off = (weather.time_mid - plain.time_mid) / np.timedelta64(1, "m")
-    assert np.abs(off).max() < 5.0
+def rolled(hours: int) -> list[list[str]]:
+    """Our year with its radiation so many hours late."""
+    rows = epw_rows()
+    columns = slice(EPW["ghi"], EPW["dhi"] + 1)
+    late = [row[columns] for row in rows[-hours:] + rows[:-hours]]
+    for row, values in zip(rows, late, strict=True):
+        row[columns] = values
+    return rows
+
+
+@pytest.mark.parametrize("hours", [4, -4])
+def test_radiation_hours_off_is_put_right(of, hours):
+    weather = of(epw_text(rolled(hours)))
+    assert weather.stamp.used_min == pytest.approx(30.0 - 60.0 * hours, abs=1.0)  # the sun's way differs a little
+
+
+@pytest.mark.parametrize(("hours", "end"), [(7, -300), (-7, 300)])
+def test_shift_beyond_the_search_is_refused(told, hours, end):
+    (message,) = told(epw_text(rolled(hours)))
+    assert message.startswith("made.dat: time stamps: closure of GHI, DNI and DHI finds no time of day that fits; got ")
+    assert f" W/m2, at {end:+d} min from the format's rule, where the search ends; " in message
+    assert message.endswith(
+        "; allowed: within 300 min of the format's rule; mend the header's UTC offset or longitude, "
+        "or give them under [place]; check which columns are GHI, DNI and DHI"
+    )
+
+
+def test_columns_that_do_not_belong_together_are_told(of, plain):
+    rows = epw_rows()
+    for row in rows:
+        row[EPW["dhi"]] = f"{2.0 * float(row[EPW['dhi']]) + 80.0 * (float(row[EPW['dni']]) > 0.0):.1f}"
+    weather = of(epw_text(rows))
+    assert weather.stamp.rmse_w_m2 > 60.0
+    assert (weather.time_mid == plain.time_mid).all()
+    (notice,) = weather.notices
+    assert notice == (
+        f"GHI, DNI and DHI do not belong together: GHI misses DHI + DNI cos z by {weather.stamp.rmse_w_m2:.0f} W/m2 rms "
+        "over the hours with beam, and no shift of the clock mends it; check which columns they are, and their units"
+    )
 
 
 def test_too_little_beam_to_tell(of):
@@ -817,6 +865,18 @@ def test_leap_year_without_its_leap_day(of):
     local = pd.DatetimeIndex(weather.time_mid) + pd.Timedelta(hours=1)
     assert not ((local.month == 2) & (local.day == 29)).any()
     assert weather.stamp.found_min == pytest.approx(30.0, abs=0.1)
+
+
+def test_leap_day_in_a_tmy3(of, greensboro):
+    made, start = Tmy3(), hour_of_year(2, 28, 0)
+    day = [["02/29/1996", *row[1:]] for row in made.rows[start : start + 24]]
+    made.rows[start + 24 : start + 24] = day
+    weather = of(made.text)
+    assert len(weather) == 8784
+    assert weather.notices[0].endswith(", put on one axis of 2004")
+    assert (weather.t_air[start + 24 : start + 48] == greensboro.t_air[start : start + 24]).all()
+    assert (np.delete(weather.t_air, range(start + 24, start + 48)) == greensboro.t_air).all()
+    assert weather.stamp.used_min == -30.0
 
 
 def test_leap_year_cut_off(told):

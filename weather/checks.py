@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
+from scipy.constants import zero_Celsius
 
 from weather.errors import InputError, Problem
 from weather.sun import Sun
@@ -31,7 +33,9 @@ LIMITS = {  # hard physical limits: what lies outside is taken as missing
 LONGEST_GAP = 3  # h in a row that are filled by a straight line; longer gaps are refused
 SHIFT_TOLERANCE = 5.0  # min between a format's rule and the closure
 ENOUGH_BEAM = 200  # h with beam, below which closure can't tell
-CANDIDATES = np.arange(-95.0, 95.5, 1.0)  # min
+SEARCH = np.arange(-300.0, 301.0, 5.0)  # min from the format's rule; a header passes up to 4 h off (`site_problems`)
+FINE = np.arange(-5.0, 5.5, 1.0)  # min around the best of those
+POOR = 60.0  # W/m2 of closure error at the best shift, from which on the three columns hardly belong together
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -71,9 +75,10 @@ def clean_column(name: str, *, values: Floats, file: str, stamps: pd.DatetimeInd
     said = []
     if wild.any():
         first = int(np.argmax(wild))
+        zero, shown = (zero_Celsius, "C") if unit == "K" else (0.0, unit)  # a file's temperatures are in C
         said.append(
-            f"{name}: {np.count_nonzero(wild)} h outside {low:g} to {high:g} {unit} taken as missing "
-            f"(first {values[first]:g} at {str(stamps[first])[:16]})"
+            f"{name}: {np.count_nonzero(wild)} h outside {low - zero:g} to {high - zero:g} {shown} taken as missing "
+            f"(first {values[first] - zero:g} at {str(stamps[first])[:16]})"
         )
     missing = wild | ~np.isfinite(values)
     _refuse_long_gap(name, missing=missing, file=file, stamps=stamps)
@@ -111,12 +116,12 @@ def _refuse_long_gap(name: str, *, missing: Mask, file: str, stamps: pd.Datetime
 
 
 def site_problems(site: Site, *, file: str) -> list[Problem]:
-    """Faults of a file's place: each number in its bounds, and the clock fits the longitude.
+    """Faults of a file's place: each number there and in its bounds, and the clock fits the longitude.
 
     Parameters
     ----------
     site
-        As read.
+        As read; NaN where the file has no number.
     file
         For messages.
 
@@ -135,7 +140,10 @@ def site_problems(site: Site, *, file: str) -> list[Problem]:
     found = []
     for name, (low, high) in bounds.items():
         value = getattr(site, name)
-        if not low <= value <= high:
+        if np.isnan(value):
+            what = f"header: {name} is missing"
+            found.append(Problem(where=file, what=what, got="no number", allowed=f"{low:g} to {high:g}", do=do))
+        elif not low <= value <= high:
             what = f"header: {name} is impossible"
             found.append(Problem(where=file, what=what, got=f"{value:g}", allowed=f"{low:g} to {high:g}", do=do))
     apart = abs((site.longitude_deg / 15.0 - site.utc_offset_h + 12.0) % 24.0 - 12.0)
@@ -151,9 +159,13 @@ def site_problems(site: Site, *, file: str) -> list[Problem]:
 
 
 def find_stamp(
-    sun: Sun, *, latitude_deg: float, ghi: Floats, dni: Floats, dhi: Floats, rule_min: float
+    sun: Sun, *, latitude_deg: float, ghi: Floats, dni: Floats, dhi: Floats, rule_min: float, file: str
 ) -> tuple[Stamp, str]:
     """Time-stamp convention of a file, by closure of GHI against DHI + DNI cos z.
+
+    A shift that is found at an end of the search is refused: it would be a guess. A large error at the best shift is said
+    and not refused, since it tells of the three columns and not of the clock, and the year may still be wanted; a shift
+    then counts only where it lowers the error by a tenth at least.
 
     Parameters
     ----------
@@ -165,6 +177,8 @@ def find_stamp(
         ``(n,)`` [W/m2].
     rule_min
         Minutes that the rule adds to the file's stamps.
+    file
+        For messages.
 
     Returns
     -------
@@ -172,6 +186,11 @@ def find_stamp(
         The rule's shift where the closure agrees with it to 5 minutes or can't tell, else the one found.
     str
         A notice, empty if all is well.
+
+    Raises
+    ------
+    InputError
+        The closure is best 5 hours from the rule, where the search ends.
     """
     beam = dni > 50.0
     if np.count_nonzero(beam) < ENOUGH_BEAM:
@@ -180,35 +199,64 @@ def find_stamp(
             stamp,
             f"too little beam ({np.count_nonzero(beam)} h) to find the time-stamp convention: the format's rule is used",
         )
-    rmse = _closure(sun, latitude_deg=latitude_deg, lit=beam, ghi=ghi, dni=dni, dhi=dhi)
-    best = int(np.clip(np.argmin(rmse), 1, len(rmse) - 2))
-    before, here, after = rmse[best - 1 : best + 2] ** 2
-    bend = before - 2.0 * here + after
-    found = rule_min + float(CANDIDATES[best] + (0.5 * (before - after) / bend if bend > 0.0 else 0.0))
-    off = abs(found - rule_min) > SHIFT_TOLERANCE
+    lit = {"ghi": ghi[beam], "dni": dni[beam], "dhi": dhi[beam]}
+    latitude, declination = np.radians(latitude_deg), np.radians(sun.declination_deg[beam])
+    level, swing = np.sin(latitude) * np.sin(declination), np.cos(latitude) * np.cos(declination)
+
+    def closure(shifts: Floats) -> Floats:
+        """Error at each shift [W/m2]."""
+        turned = np.radians(sun.hour_angle_deg[beam] + shifts[:, np.newaxis] / 4.0)
+        cosine = np.maximum(level + swing * np.cos(turned), 0.0)
+        error = lit["dhi"] + lit["dni"] * cosine - lit["ghi"]
+        return np.asarray(np.sqrt(np.mean(error**2, axis=1)))
+
+    return _stamp(closure, rule_min=rule_min, file=file)
+
+
+def _stamp(closure: Callable[[Floats], Floats], *, rule_min: float, file: str) -> tuple[Stamp, str]:
+    coarse = closure(SEARCH)
+    near = int(np.argmin(coarse))
+    if near in {0, len(SEARCH) - 1}:
+        raise InputError(_clock_not_found(SEARCH[near], error=coarse[near], file=file))
+    shift, best = _lowest(closure, SEARCH[near] + FINE)
+    found, at_rule = rule_min + shift, float(np.interp(0.0, SEARCH, coarse))
+    off, poor = abs(shift) > SHIFT_TOLERANCE, best > POOR
+    used = found if off and not (poor and best > 0.9 * at_rule) else rule_min
     stamp = Stamp(
         rule_min=rule_min,
         found_min=found,
-        used_min=found if off else rule_min,
-        rmse_w_m2=float(rmse[best]),
-        rmse_unshifted_w_m2=float(np.interp(-rule_min, CANDIDATES, rmse)),
+        used_min=used,
+        rmse_w_m2=best,
+        rmse_unshifted_w_m2=float(np.interp(-rule_min, SEARCH, coarse)),
     )
-    if not off:
-        return stamp, ""
-    at_rule = float(np.interp(0.0, CANDIDATES, rmse))
-    return stamp, (
-        f"time stamps: the format's rule says {rule_min:+.0f} min to mid-hour, closure of GHI, DNI and DHI finds {found:+.1f} min "
-        f"(error {rmse[best]:.1f} against {at_rule:.1f} W/m2): the shift found is used; check the file's clock and UTC offset"
-    )
+    said = []
+    if used != rule_min:
+        said.append(
+            f"time stamps: the format's rule says {rule_min:+.0f} min to mid-hour, closure of GHI, DNI and DHI finds "
+            f"{found:+.1f} min (error {best:.1f} against {at_rule:.1f} W/m2): the shift found is used; check the file's clock and UTC offset"
+        )
+    if poor:
+        said.append(
+            f"GHI, DNI and DHI do not belong together: GHI misses DHI + DNI cos z by {best:.0f} W/m2 rms over the hours with "
+            "beam, and no shift of the clock mends it; check which columns they are, and their units"
+        )
+    return stamp, "; ".join(said)
 
 
-def _closure(sun: Sun, *, latitude_deg: float, lit: Mask, ghi: Floats, dni: Floats, dhi: Floats) -> Floats:
-    """Closure error at each candidate shift [W/m2]; cos z = a + b cos(shift) - c sin(shift) for each hour."""
-    latitude, declination = np.radians(latitude_deg), np.radians(sun.declination_deg[lit])
-    angle = np.radians(sun.hour_angle_deg[lit])
-    level = np.sin(latitude) * np.sin(declination)
-    swing = np.cos(latitude) * np.cos(declination)
-    turn = np.radians(CANDIDATES / 4.0)[:, np.newaxis]
-    cosine = np.maximum(level + swing * np.cos(angle + turn), 0.0)
-    error = dhi[lit] + dni[lit] * cosine - ghi[lit]
-    return np.asarray(np.sqrt(np.mean(error**2, axis=1)))
+def _lowest(closure: Callable[[Floats], Floats], shifts: Floats) -> tuple[float, float]:
+    """Shift of the least error, by a parabola through the best three, and the error at the best of them [W/m2]."""
+    rmse = closure(shifts)
+    best = int(np.clip(np.argmin(rmse), 1, len(rmse) - 2))
+    before, here, after = rmse[best - 1 : best + 2] ** 2
+    bend = before - 2.0 * here + after
+    return float(shifts[best] + (0.5 * (before - after) / bend if bend > 0.0 else 0.0)), float(rmse[best])
+
+
+def _clock_not_found(shift: float, *, error: float, file: str) -> Problem:
+    return Problem(
+        where=file,
+        what="time stamps: closure of GHI, DNI and DHI finds no time of day that fits",
+        got=f"the least error, {error:.0f} W/m2, at {shift:+.0f} min from the format's rule, where the search ends",
+        allowed=f"within {SEARCH[-1]:.0f} min of the format's rule",
+        do="mend the header's UTC offset or longitude, or give them under [place]; check which columns are GHI, DNI and DHI",
+    )

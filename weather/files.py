@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import codecs
 import csv
 import io
+import tempfile
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -74,26 +76,32 @@ def read(path: Path, *, place: Mapping[str, float] | None = None) -> WeatherYear
             Problem(where=str(path), what=f"looks like {name} but can't be read as such", got=_first_line(fault), do=do)
         ) from None
     if place:
+        said = [_stands_in(key, own=getattr(raw.site, key)) for key in place]
         raw = replace(raw, site=replace(raw.site, **place))  # type: ignore[arg-type] # never the name
     if faults := site_problems(raw.site, file=str(path)):
         raise InputError(faults)
-    return _checked(
-        raw, file=str(path), said=[f"{key} as given under [place], not as in the file" for key in place or ()]
-    )
+    return _checked(raw, file=str(path), said=said if place else [])
+
+
+def _stands_in(key: str, *, own: float) -> str:
+    return f"{key} as given under [place]" + ("; the file has none" if np.isnan(own) else ", not as in the file")
 
 
 def _text(path: Path) -> str:
     try:
         data = path.read_bytes()
-    except OSError as fault:
+    except (OSError, ValueError) as fault:  # a value error is a path that no system takes
         do = "check the path (it counts from the scenario file), or name a bundled station"
-        raise InputError(
-            Problem(where=str(path), what=f"weather file cannot be read: {fault.strerror}", do=do)
-        ) from None
+        what = f"weather file cannot be read: {getattr(fault, 'strerror', fault)}"
+        raise InputError(Problem(where=str(path), what=what, do=do)) from None
     if b"\0" in data[:4096] or not data.strip():
         what = "weather file is empty" if not data.strip() else "weather file is binary, not text"
         raise InputError(Problem(where=str(path), what=what, allowed="a TMY3, TMY2 or EPW text file"))
-    return data.decode("latin-1")
+    data = data.removeprefix(codecs.BOM_UTF8)
+    try:
+        return data.decode("utf-8")
+    except UnicodeDecodeError:
+        return data.decode("latin-1")
 
 
 def _first_line(fault: Exception) -> str:
@@ -122,9 +130,9 @@ def _tmy3(text: str, path: Path) -> Raw:
     if len(fields) != 7:
         what = "TMY3 header needs seven fields: code, name, state, UTC offset, latitude, longitude, altitude"
         raise InputError(Problem(where=f"{path}:1", what=what, got=repr(head.strip()), do="mend the first line"))
-    fields[1] = fields[1].replace(",", " ").replace('"', "")
     years = {int(line[6:10]) for line in body.splitlines()[1:] if line.strip()}
-    frame, meta = iotools.read_tmy3(io.StringIO(",".join(fields) + "\n" + body), coerce_year=PLAIN_YEAR)
+    plain = "0,name,state,0,0,0,0"  # the place is read here, where a blank is no fault yet
+    frame, _ = iotools.read_tmy3(io.StringIO(f"{plain}\n{body}"))
     source = "Alb source" if "Alb source" in frame else None
     albedo = _numbers(frame, "albedo")
     if source:
@@ -140,20 +148,31 @@ def _tmy3(text: str, path: Path) -> Raw:
         "albedo": np.where(albedo > 0.0, albedo, np.nan),
         "pressure": _numbers(frame, "pressure") * 100.0,
     }
-    place = _site(f"{str(meta['Name']).strip()} {meta.get('State', '')}".strip(), meta)
+    _, name, state, offset, latitude, longitude, altitude = fields
     return Raw(
         format="TMY3",
         rule_min=-30.0,
-        site=place,
-        index=_naive(frame.index),
+        site=_site(f"{_plain(name)} {_plain(state)}".strip(), latitude, longitude, altitude=altitude, offset=offset),
+        index=_tmy3_index(frame),
         columns=columns,
         years=tuple(sorted(years)),
     )
 
 
+def _tmy3_index(frame: pd.DataFrame) -> pd.DatetimeIndex:
+    """Stamps on one calendar year, a leap year where a 29 February is among them, which pvlib would move to 1 March."""
+    date = frame["Date (MM/DD/YYYY)"].astype(str).str.split("/")
+    clock = frame["Time (HH:MM)"].astype(str).str.split(":")
+    month, day = date.str[0].astype(int), date.str[1].astype(int)
+    year = LEAP_YEAR if ((month == 2) & (day == 29)).any() else PLAIN_YEAR
+    midnight = pd.to_datetime(pd.DataFrame({"year": year, "month": month, "day": day}))
+    minutes = 60 * clock.str[0].astype(int) + clock.str[1].astype(int)
+    return pd.DatetimeIndex(midnight + pd.to_timedelta(minutes, unit="min"))
+
+
 def _tmy2(text: str, path: Path) -> Raw:
-    del text
-    frame, meta = iotools.read_tmy2(str(path))
+    head, _, body = text.partition("\n")
+    frame = _tmy2_rows(body, name=path.name)
     columns = {
         "ghi": _marked(frame, "GHI", 9999),
         "dni": _marked(frame, "DNI", 9999),
@@ -164,11 +183,42 @@ def _tmy2(text: str, path: Path) -> Raw:
         "cloud": _marked(frame, "OpqCld", 99) / 10.0,
         "pressure": _marked(frame, "Pressure", 9999) * 100.0,
     }
-    name = f"{str(meta.get('City', '')).strip().title()} {str(meta.get('State', '')).strip()}".strip()
     years = tuple(sorted({1900 + int(year) % 100 for year in frame["year"]}))
     return Raw(
-        format="TMY2", rule_min=30.0, site=_site(name, meta), index=_naive(frame.index), columns=columns, years=years
+        format="TMY2", rule_min=30.0, site=_tmy2_site(head), index=_naive(frame.index), columns=columns, years=years
     )
+
+
+def _tmy2_rows(body: str, *, name: str) -> pd.DataFrame:
+    """Rows as pvlib reads them, from a copy in ASCII: it takes a path alone, and a place's name of one word alone."""
+    with tempfile.TemporaryDirectory() as folder:
+        copy = Path(folder) / "copy.tm2"
+        plain = " 00000 NAME                   XX   0 N  0  0 E   0  0     0"
+        copy.write_text(f"{plain}\n{body}", encoding="ascii", errors="replace")
+        try:
+            frame, _ = iotools.read_tmy2(str(copy))
+        except ValueError as fault:
+            raise ValueError(str(fault).replace(str(copy), name)) from None
+    return frame  # type: ignore[no-any-return] # pvlib ships no types
+
+
+def _tmy2_site(head: str) -> Site:
+    """Place by the columns of the TMY2 manual, in which names of several words fit."""
+    return _site(
+        f"{head[7:29].strip().title()} {head[30:32].strip()}".strip(),
+        _degrees(head[37:44], sides="NS"),
+        _degrees(head[45:53], sides="EW"),
+        altitude=head[55:59],
+        offset=head[33:36],
+    )
+
+
+def _degrees(field: str, *, sides: str) -> str:
+    """Such as "W  80 16" in decimal degrees, negative on the second side; empty if it is not like that."""
+    side, words = field[:1], field[1:].split()
+    if side not in sides or len(words) != 2:
+        return ""
+    return str((_number(words[0]) + _number(words[1]) / 60.0) * (1.0 if side == sides[0] else -1.0))
 
 
 def _epw(text: str, path: Path) -> Raw:
@@ -178,8 +228,8 @@ def _epw(text: str, path: Path) -> Raw:
         raise InputError(
             Problem(where=f"{path}:1", what=what, got=f"{len(head)} fields: {','.join(head)}", do="mend the first line")
         )
-    head = [field.replace(",", " ") for field in head]
-    frame, meta = iotools.read_epw(io.StringIO(",".join(head) + "\n" + text.partition("\n")[2]))
+    plain = "LOCATION,city,-,-,-,0,0,0,0,0"  # the place is read here, where a blank is no fault yet
+    frame, _ = iotools.read_epw(io.StringIO(f"{plain}\n" + text.partition("\n")[2]))
     columns = {
         "ghi": _marked(frame, "ghi", 9999),
         "dni": _marked(frame, "dni", 9999),
@@ -194,19 +244,30 @@ def _epw(text: str, path: Path) -> Raw:
     }
     index = _naive(frame.index)
     years = tuple(sorted({int(year) for year in index.year}))
-    return Raw(
-        format="EPW", rule_min=30.0, site=_site(str(meta["city"]), meta), index=index, columns=columns, years=years
-    )
+    latitude, longitude, offset, altitude = head[6:]
+    site = _site(_plain(head[1]), latitude, longitude, altitude=altitude, offset=offset)
+    return Raw(format="EPW", rule_min=30.0, site=site, index=index, columns=columns, years=years)
 
 
-def _site(name: str, meta: Mapping[str, Any]) -> Site:
+def _plain(name: str) -> str:
+    return name.replace(",", " ").replace('"', "").strip()
+
+
+def _site(name: str, latitude: str, longitude: str, *, altitude: str, offset: str) -> Site:
     return Site(
         name=name,
-        latitude_deg=float(meta["latitude"]),
-        longitude_deg=float(meta["longitude"]),
-        altitude_m=float(meta["altitude"]),
-        utc_offset_h=float(meta["TZ"]),
+        latitude_deg=_number(latitude),
+        longitude_deg=_number(longitude),
+        altitude_m=_number(altitude),
+        utc_offset_h=_number(offset),
     )
+
+
+def _number(text: str) -> float:
+    try:
+        return float(text)
+    except ValueError:
+        return float("nan")
 
 
 def _naive(index: Any) -> pd.DatetimeIndex:
@@ -253,7 +314,7 @@ def _checked(raw: Raw, *, file: str, said: list[str]) -> WeatherYear:
     radiation = {name: values for name in ("ghi", "dni", "dhi") if (values := whole[name]) is not None}
     at_rule = _instants(utc, shift_min=raw.rule_min)
     sun = sun_at(at_rule, site=raw.site)
-    stamp, notice = find_stamp(sun, latitude_deg=raw.site.latitude_deg, rule_min=raw.rule_min, **radiation)
+    stamp, notice = find_stamp(sun, latitude_deg=raw.site.latitude_deg, rule_min=raw.rule_min, file=file, **radiation)
     time_mid = _instants(utc, shift_min=stamp.used_min)
     local = pd.DatetimeIndex(_instants(index, shift_min=stamp.used_min))
     return WeatherYear(

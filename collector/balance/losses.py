@@ -10,8 +10,8 @@ from numpy.typing import NDArray
 
 from collector.build.collector import Collector
 from collector.physics.convection import air, gap_nusselt
+from collector.physics.emittance_curve import EmittanceCurve
 from collector.physics.radiation import SIGMA, parallel_plates_factor, radiative_flux, sky_view_factor
-from collector.physics.spectrum import EmittanceCurve
 from weather.year import Floats, Mask
 
 __all__ = ["Facing", "Gap", "Losses", "Network", "Step", "Surroundings", "gap_rayleigh", "network_of", "newton_step"]

@@ -11,8 +11,8 @@ import numpy as np
 from collector.build.catalogue import entry
 from collector.build.scenario import AbsorberTable, CasingTable, CollectorTable, CoverTable, ReportTable, Scenario
 from collector.build.surfaces import REFERENCE, Surface
+from collector.physics.emittance_curve import EmittanceCurve
 from collector.physics.glazing import slab_from_normal
-from collector.physics.spectrum import EmittanceCurve
 from weather.errors import InputError, Problem
 
 __all__ = ["Absorber", "Collector", "Cover", "Materials", "ReportedCollector", "collector_of", "values_of"]

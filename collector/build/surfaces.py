@@ -12,8 +12,9 @@ from scipy.constants import zero_Celsius
 
 from collector.build.spectra import read_spectrum
 from collector.build.stacks import FilmStack, read_stack
+from collector.physics.emittance_curve import EmittanceCurve, emittance_function
 from collector.physics.layers import hemispherical_of_normal, hemispherical_spectrum, normal_spectrum
-from collector.physics.spectrum import EmittanceCurve, Spectrum, emittance, emittance_function, solar_absorptance
+from collector.physics.spectrum import Spectrum, emittance, solar_absorptance
 from weather.errors import InputError, Problem
 from weather.year import Floats
 

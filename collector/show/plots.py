@@ -11,7 +11,7 @@ from matplotlib.figure import Figure
 
 from collector.show.tables import MONTHS, PATHS, temperature_words
 
-__all__ = ["FIGURES", "draw_months", "draw_sunlight", "save_figure"]
+__all__ = ["FAINT", "FIGURES", "HEAT", "INK", "LOSS", "SIZE", "SUN", "draw_months", "draw_sunlight", "save_figure"]
 
 SUN, HEAT, LOSS, INK, FAINT = (
     "#e8c468",

@@ -12,8 +12,10 @@ __all__ = [
     "catalogue_text",
     "check_text",
     "comparison_text",
+    "hung",
     "models_text",
     "point_text",
+    "remarks",
     "rounded_to_sum",
     "temperature_words",
     "year_text",
@@ -92,7 +94,7 @@ def year_text(run: RUN) -> str:
         _hot(run),
         _sums(run),
         _basis(run),
-        *_remarks([run]),
+        *remarks([run]),
     ]
     return "\n\n".join("\n".join(block) for block in blocks if block) + "\n"
 
@@ -204,7 +206,8 @@ def _sums(run: RUN) -> list[str]:
 
 def _basis(run: RUN) -> list[str]:
     weather, models = run["weather"], run["models"]
-    rows = {
+    coating = run.get("coating")
+    rows = _coating(coating) | {
         "weather": f"{weather['file']}; {weather['format']}, {weather['hours']} h, GHI {weather['ghi_kWh_m2']:.1f}, "
         f"DNI {weather['dni_kWh_m2']:.1f}, DHI {weather['dhi_kWh_m2']:.1f} kWh/m2, air {weather['air_mean_C']:.1f} C",
         "time stamps": _stamps(weather),
@@ -214,7 +217,18 @@ def _basis(run: RUN) -> list[str]:
         "heat held": _heat_held(run["heat_held"]),
         "not included": "pipes; stores; shading; dirt; snow",
     }
-    return ["What it rests on", *(line for name, words in rows.items() for line in _hung(words, head=f"  {name:<13}"))]
+    return ["What it rests on", *(line for name, words in rows.items() for line in hung(words, head=f"  {name:<13}"))]
+
+
+def _coating(found: RUN | None) -> dict[str, str]:
+    """A row for a coating known by its spectrum."""
+    if found is None or not found["by_spectrum"]:
+        return {}
+    name = found["name"].encode("ascii", "replace").decode("ascii")
+    values = (
+        f"absorptance {found['absorptance']:.4f}, emittance {found['emittance']:.4f} at {found['emittance_at_C']:.1f} C"
+    )
+    return {"coating": f"{name}: {values}; {found['basis']}"}
 
 
 def _heat_held(held: RUN) -> str:
@@ -236,12 +250,37 @@ def _stamps(weather: RUN) -> str:
     return f"{weather['stamp_found_min']:+.1f} min to mid-hour by closure, format's rule {rule:+.0f}, used {used:+.1f} ({errors})"
 
 
-def _hung(words: str, *, head: str) -> list[str]:
+def hung(words: str, *, head: str) -> list[str]:
+    """Words folded at the page's width, hanging from a head.
+
+    Parameters
+    ----------
+    words
+        A sentence or a list.
+    head
+        What the first line begins with.
+
+    Returns
+    -------
+    list of str
+        Lines of at most 80 columns.
+    """
     return textwrap.wrap(words, WIDTH, initial_indent=head, subsequent_indent=" " * len(head), break_on_hyphens=False)
 
 
-def _remarks(runs: Sequence[RUN]) -> list[list[str]]:
-    """Notices and cautions, each once; of several runs, with the numbers of those that it is about."""
+def remarks(runs: Sequence[RUN]) -> list[list[str]]:
+    """Notices and cautions, each once; of several runs, with the numbers of those that it is about.
+
+    Parameters
+    ----------
+    runs
+        Accounts with ``notices`` and ``cautions``.
+
+    Returns
+    -------
+    list of list of str
+        A block of lines each.
+    """
     blocks = []
     for key, title in (("notices", "Filled, mended or out of range"), ("cautions", "Caution")):
         about: dict[str, list[str]] = {}
@@ -253,7 +292,7 @@ def _remarks(runs: Sequence[RUN]) -> list[list[str]]:
             for remark, numbers in about.items()
         ]
         if said or key == "notices":
-            lines = [line for remark in said or ["nothing"] for line in _hung(remark, head="  - ")]
+            lines = [line for remark in said or ["nothing"] for line in hung(remark, head="  - ")]
             blocks.append([title, *lines])
     return blocks
 
@@ -274,12 +313,12 @@ def comparison_text(runs: Sequence[RUN]) -> str:
     legend = [
         line
         for number, run in enumerate(runs, start=1)
-        for line in _hung(f"{run['title']}, {temperature_words(run)}", head=f"{number:3d}  ")
+        for line in hung(f"{run['title']}, {temperature_words(run)}", head=f"{number:3d}  ")
     ]
     blocks = [legend]
     starts = range(0, len(runs), BLOCK)
     blocks += [_side_by_side(runs[start : start + BLOCK], first=start + 1) for start in starts]
-    blocks += _remarks(runs)
+    blocks += remarks(runs)
     blocks.append(["One run alone prints its whole page: months, spread, hottest hours, sources."])
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
 
@@ -342,7 +381,7 @@ def point_text(point: RUN) -> str:
     lines += [f"  {words:<30} {_cell(point[key], form):>10} {unit}".rstrip() for words, key, unit, form in rows]
     for number, t_cover in enumerate(point["covers_C"], start=1):
         lines.insert(2 + number, f"  {f'cover {number} (1 is outermost)':<30} {t_cover:10.2f} C")
-    blocks = [lines, *_remarks([point])]
+    blocks = [lines, *remarks([point])]
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
 
 
@@ -373,7 +412,7 @@ def check_text(found: RUN) -> str:
         f"  at normal incidence the plate takes up {100 * found['normal_absorptance_plate']:.1f} % of the sunlight",
         f"  back {found['U_back_W_m2K']:.2f}, edges {found['U_edge_W_m2K']:.2f} W/m2K",
     ]
-    blocks = [lines, _basis(found), *_remarks([found])]
+    blocks = [lines, _basis(found), *remarks([found])]
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
 
 
@@ -393,9 +432,7 @@ def models_text(relations: Mapping[str, Mapping[str, str]]) -> str:
     blocks = []
     for step, names in relations.items():
         title = "without a choice" if step == "fixed" else "fluid.name" if step == "fluid" else f"models.{step}"
-        blocks.append(
-            [title, *(line for name, source in names.items() for line in _hung(source, head=f"  {name:<20}"))]
-        )
+        blocks.append([title, *(line for name, source in names.items() for line in hung(source, head=f"  {name:<20}"))])
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
 
 
@@ -417,12 +454,12 @@ def catalogue_text(shelves: Mapping[str, Mapping[str, Mapping[str, Any]]]) -> st
         lines += [shelf, ""]
         for name, entry in entries.items():
             values = ", ".join(f"{key} {value:g}" for key, value in entry.items() if not isinstance(value, str))
-            lines += [f'  "{name}"', *_hung(values, head="      ")]
+            lines += [f'  "{name}"', *hung(values, head="      ")]
             lines += [
                 line
                 for key in ("note", "source")
                 if key in entry
-                for line in _hung(f"{key}: {entry[key]}", head="      ")
+                for line in hung(f"{key}: {entry[key]}", head="      ")
             ]
         lines.append("")
     return "\n".join(lines)

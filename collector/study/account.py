@@ -19,6 +19,7 @@ from collector.build.collector import Collector, collector_of
 from collector.build.scenario import CHOICES, Scenario
 from collector.study.cautions import cautions_of
 from collector.study.notices import notices_of
+from collector.study.plate import coating_of, read_notices
 from collector.study.sureness import Alternative, alternatives
 from collector.study.year import Conditions, HeatYear, heat_years, open_scenario_weather, standing, wind_at_collector
 from weather.year import Floats, WeatherYear
@@ -107,7 +108,7 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         "heat_held": _capacity(model),
         "weather": _weather(weather, scenario),
         "models": _models(scenario),
-        "notices": list(weather.notices),
+        "notices": [*weather.notices, *read_notices(scenario)],
     }
 
 
@@ -139,6 +140,7 @@ def _account(year: HeatYear, scenario: Scenario, *, hours: Operated, still: Stea
         "months": _months(year.conditions, hours),
         "weather": _weather(year.conditions.weather, scenario),
         "models": _models(scenario),
+        "coating": coating_of(year, scenario, hours=hours, still=still),
         "notices": notices_of(year, scenario, hours=hours, still=still),
         "cautions": cautions_of(scenario, hours=hours, still=still),
     }

@@ -15,6 +15,7 @@ from collector.build.collector import ReportedCollector
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import valid_range
+from collector.study.plate import coating_of
 from collector.study.point import BY_REPORT
 from collector.study.year import HeatYear, wind_at_collector
 from weather.sky import DEW_POINT_RANGE, NEEDS
@@ -56,6 +57,7 @@ def notices_of(year: HeatYear, scenario: Scenario, *, hours: Operated, still: St
         *_sky(year, scenario, on=hours.on),
         *_gaps(year, hours),
         *_report(year, hours),
+        *_coating(year, scenario, hours=hours, still=still),
     ]
 
 
@@ -120,6 +122,11 @@ def _gaps(year: HeatYear, hours: Operated) -> Iterator[str]:
             yield f"gap {number}: {above} running h with a Rayleigh number above 1e5, extrapolated"
         if gap.aspect < LEAST_ASPECT:
             yield f"gap {number}: length over thickness {gap.aspect:.1f}, relation found from {LEAST_ASPECT:.0f}: extrapolated"
+
+
+def _coating(year: HeatYear, scenario: Scenario, *, hours: Operated, still: SteadyState) -> list[str]:
+    found = coating_of(year, scenario, hours=hours, still=still)
+    return found["notices"] if found else []
 
 
 def _report(year: HeatYear, hours: Operated) -> Iterator[str]:

@@ -15,6 +15,7 @@ from collector.build.collector import Collector, collector_of
 from collector.build.scenario import Scenario
 from collector.physics.fluids import freezing_point, valid_range
 from collector.study.cautions import at_stagnation, when_running
+from collector.study.plate import read_notices
 from collector.study.year import wind_coefficient
 from weather.errors import InputError, Problem
 from weather.plane import PlaneIrradiance
@@ -126,7 +127,7 @@ def solve_point(scenario: Scenario, point: Point) -> dict[str, Any]:
         "residual_W_m2": float(state.residual[0]),
         "converged": bool(state.converged[0]),
         "pressure_Pa": pressure,
-        "notices": [said, *([] if by_build else [BY_REPORT]), *_notices(scenario, state, feed)],
+        "notices": [said, *([] if by_build else [BY_REPORT]), *read_notices(scenario), *_notices(scenario, state, feed)],
         "cautions": _cautions(scenario, state, feed),
     }
 

@@ -15,7 +15,7 @@ from collector.balance.operated import Operated, operated_steadily
 from collector.balance.optics import Absorbed
 from collector.balance.steady import Feed, SteadyState, Uptake, operate, solve_stagnation
 from collector.balance.transient import solve_drift
-from collector.build.collector import collector_of
+from collector.build.collector import Absorber, Collector, collector_of
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
 from weather.errors import InputError, Problem
@@ -30,6 +30,7 @@ __all__ = [
     "HeatYear",
     "heat_years",
     "open_scenario_weather",
+    "recoated",
     "standing",
     "wind_at_collector",
     "wind_coefficient",
@@ -131,6 +132,32 @@ def _at(conditions: Conditions, uptake: Uptake) -> HeatYear:
         return HeatYear(conditions=conditions, uptake=uptake, running=None, on=None, drift=drift)
     running, on = operate(network, around, absorbed, uptake=uptake)
     return HeatYear(conditions=conditions, uptake=uptake, running=running, on=on, drift=None)
+
+
+def recoated(year: HeatYear, *, absorber: Absorber) -> HeatYear:
+    """Solve a year again with another coating, or any other plate, on the same collector in the same sun.
+
+    Parameters
+    ----------
+    year
+        Of a collector known by its build.
+    absorber
+        The plate to put in.
+
+    Returns
+    -------
+    HeatYear
+        With heat held where the first one has it.
+    """
+    before, uptake = year.conditions, year.uptake
+    assert isinstance(before.model.collector, Collector)  # noqa: S101 # the callers refuse a test report
+    built = replace(before.model.collector, absorber=absorber)
+    model = model_of(built, pressure=before.weather.pressure)
+    if before.model.capacity is None:
+        model = replace(model, capacity=None)
+    conditions = replace(before, model=model, absorbed=model.absorbed(before.plane, before.around))
+    again = model.uptake(uptake.feed, start_above=uptake.start_above, stop_above=uptake.stop_above)
+    return _at(conditions, again)
 
 
 def standing(conditions: Conditions) -> SteadyState:

@@ -11,6 +11,7 @@ from hypothesis import strategies as st
 from scipy.constants import c, h, k
 from scipy.integrate import quad
 
+from collector.physics.emittance_curve import emittance_function
 from collector.physics.layers import (
     Film,
     bruggeman_1935,
@@ -24,7 +25,6 @@ from collector.physics.spectrum import (
     band_fraction,
     cut_off,
     emittance,
-    emittance_function,
     solar_absorptance,
 )
 

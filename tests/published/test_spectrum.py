@@ -9,13 +9,13 @@ import pytest
 from pvlib.spectrum import get_reference_spectra
 from scipy.constants import zero_Celsius
 
+from collector.physics.emittance_curve import emittance_function
 from collector.physics.layers import film_stack, hemispherical_spectrum, normal_spectrum
 from collector.physics.spectrum import (
     SECOND_RADIATION,
     Spectrum,
     band_fraction,
     emittance,
-    emittance_function,
     solar_absorptance,
 )
 from tests.published.printed import printed, row
