@@ -84,9 +84,9 @@ def year(scenarios: tuple[Path, ...], overrides: tuple[str, ...], out: Path | No
     from collector.show.tables import comparison_text, year_text
     from collector.study.account import runs_of
 
+    checked = [(read_scenario(path, overrides=overrides), path.parent) for path in scenarios]
     if out is not None:
         open_folder(out)
-    checked = [(read_scenario(path, overrides=overrides), path.parent) for path in scenarios]
     runs = [run for scenario, base in checked for run in runs_of(scenario, base=base)]
     accounts = [run.account for run in runs]
     content = {"runs": accounts}
@@ -162,6 +162,7 @@ def point(scenario: Path, overrides: tuple[str, ...], stagnation: bool, as_json:
     found = solve_point(read_scenario(scenario, overrides=overrides), stands)
     _emit(found, text=lambda: point_text(found), as_json=as_json)
     if not found["converged"]:
+        click.echo("noonplate: the balance did not converge: see the result", err=True)
         sys.exit(NOT_SOUND)
 
 
@@ -219,29 +220,180 @@ def _write_curves(curves: list[dict[str, Any]], content: dict[str, Any], *, out:
 
 
 @main.command()
+@_scenario
+@click.argument("points", type=click.Path(path_type=Path))
+@click.option("--terms", help="Coefficients to fit, such as eta0,a1_W_m2K; those that the points vary if not given.")
+@click.option("--drop", is_flag=True, help="Take out the terms that the points can't support.")
+@click.option("--parameter", "parameters", multiple=True, metavar="KEY", help="Fit this number of the build instead.")
+@click.option(
+    "--out", type=click.Path(path_type=Path), metavar="DIR", help="Also write fit.json and the residuals' figure."
+)
+@_set
+@_json
+def fit(
+    scenario: Path,
+    points: Path,
+    terms: str | None,
+    drop: bool,
+    parameters: tuple[str, ...],
+    out: Path | None,
+    overrides: tuple[str, ...],
+    as_json: bool,
+) -> None:
+    """Coefficients, or parameters of the build, from measured points.
+
+    POINTS is a CSV file whose column names carry their units: irradiance_W_m2 (or beam_W_m2 and diffuse_W_m2), air_C, mean_C (or
+    inlet_C and outlet_C), wind_m_s, power_W_m2 (or power_W, efficiency, flow_kg_s); and, if known, incidence_deg, sky_C,
+    uncertainty_W_m2.
+    """
+    from collector.build.points import read_points
+    from collector.build.reading import read_scenario
+    from collector.show.fit import fit_text
+    from collector.study.fit import fitted_of
+
+    checked = read_scenario(scenario, overrides=overrides)
+    table, fluid = checked.collector, checked.fluid
+    measured = read_points(
+        points, area=table.length_m * table.width_m, fluid=fluid.name, mass_fraction=fluid.mass_fraction
+    )
+    asked = [term.strip() for term in terms.split(",")] if terms else None
+    found = fitted_of(checked, measured, terms=asked, drop=drop, parameters=parameters)
+    if out is not None:
+        _write_fit(found, out=out)
+    _emit(found, text=lambda: fit_text(found), as_json=as_json)
+
+
+def _write_fit(found: dict[str, Any], *, out: Path) -> None:
+    from collector.show.files import json_text, open_folder, write_whole
+    from collector.show.fit import draw_residuals
+    from collector.show.plots import save_figure
+
+    open_folder(out)
+    write_whole(out / "fit.json", write=lambda path: path.write_text(json_text(found), encoding="utf-8"))
+    figure = draw_residuals(found)
+    write_whole(out / "residuals.png", write=lambda path: save_figure(figure, path=path))
+    click.echo(f"written to {out}: fit.json, residuals.png", err=True)
+
+
+_out_folder: Decorator = click.option(
+    "--out", type=click.Path(path_type=Path), metavar="DIR", help="Also write the summary, the table and the figures."
+)
+_metal: Decorator = click.option(
+    "--hemispherical",
+    type=click.Choice(["metal"]),
+    help="Take a measured spectrum's emittance from normal to hemispherical, as a metal's.",
+)
+
+
+@main.command()
+@click.argument("files", metavar="FILE...", nargs=-1, required=True, type=click.Path(path_type=Path))
+@click.option("--set", "overrides", multiple=True, metavar="KEY=VALUE", help="Override a key of the stack.")
+@click.option("--working", type=float, default=60.0, show_default=True, help="Plate temperature in use, C.")
+@click.option("--stagnation", type=float, default=200.0, show_default=True, help="Plate temperature without flow, C.")
+@_metal
+@_out_folder
+@_json
+def surface(
+    files: tuple[Path, ...],
+    overrides: tuple[str, ...],
+    working: float,
+    stagnation: float,
+    hemispherical: str | None,
+    out: Path | None,
+    as_json: bool,
+) -> None:
+    """Absorptance and emittance of one surface.
+
+    FILE is a CSV file of reflectance over wavelength, or several of one surface to be joined; or one stack of films in TOML.
+    """
+    from collector.show.files import open_folder
+    from collector.show.surface_tables import surface_text
+    from collector.study.surface import study_surface
+
+    found, curves = study_surface(
+        files, overrides=overrides, working=working, stagnation=stagnation, metal=hemispherical is not None
+    )
+    if out is not None:
+        from collector.show.coating_files import write_surface
+
+        open_folder(out)
+        click.echo(f"written to {out}: {', '.join(write_surface(found, curves=curves, out=out))}", err=True)
+    _emit(found, text=lambda: surface_text(found), as_json=as_json)
+
+
+@main.command()
+@_scenario
+@click.option(
+    "--coating",
+    "names",
+    multiple=True,
+    required=True,
+    metavar="A",
+    help="Two or more: a name of the catalogue, a pair such as 0.95/0.05, a CSV spectrum, a stack in TOML.",
+)
+@_metal
+@click.option("--limit", type=float, default=150.0, show_default=True, help="Count hours of a plate above this, C.")
+@click.option("--sigma-alpha", type=float, default=0.005, show_default=True, help="Uncertainty of each absorptance.")
+@click.option("--sigma-eps", type=float, default=0.01, show_default=True, help="Uncertainty of each emittance.")
+@click.option("--draws", type=int, default=2000, show_default=True, help="Of the uncertainty.")
+@click.option("--seed", type=int, default=0, show_default=True, help="Of the draws.")
+@click.option("--price", type=float, help="Of heat, money per kWh: adds what the difference is worth.")
+@click.option("--life", type=float, default=20.0, show_default=True, help="Years that the difference lasts.")
+@click.option("--discount", type=float, default=0.03, show_default=True, help="Discount rate a year.")
+@click.option("--aged", metavar="DA,DE", help="Change of absorptance and emittance by age, such as -0.02,0.03.")
+@click.option("--weight", type=float, default=0.5, show_default=True, help="Of emittance in the ageing criterion.")
+@click.option("--test-temperature", type=float, help="Of an ageing test, C; goes with --activation.")
+@click.option("--activation", type=float, help="Activation energy of ageing, kJ/mol.")
+@_set
+@_out_folder
+@_json
+def coatings(
+    scenario: Path,
+    names: tuple[str, ...],
+    hemispherical: str | None,
+    aged: str | None,
+    overrides: tuple[str, ...],
+    out: Path | None,
+    as_json: bool,
+    **given: Any,
+) -> None:
+    """Coatings against each other: same collector, same year.
+
+    The scenario's own coating is not used; differences are to the first coating named.
+    """
+    from collector.build.candidates import read_candidates
+    from collector.build.reading import read_scenario
+    from collector.show.coating_tables import coatings_text
+    from collector.show.files import open_folder
+    from collector.study.asked import Asked, changes_of
+    from collector.study.coatings import study_coatings
+
+    asked = Asked(**given, aged=changes_of(aged))
+    checked = read_scenario(scenario, overrides=overrides)
+    found = study_coatings(
+        checked, read_candidates(names, metal=hemispherical is not None), base=scenario.parent, asked=asked
+    )
+    if out is not None:
+        from collector.show.coating_files import write_coatings
+
+        open_folder(out)
+        click.echo(f"written to {out}: {', '.join(write_coatings(found.account, plane=found.plane, out=out))}", err=True)
+    _emit(found.account, text=lambda: coatings_text(found.account), as_json=as_json)
+    if not found.sound:
+        click.echo("noonplate: hours without convergence: see the result", err=True)
+        sys.exit(NOT_SOUND)
+
+
+@main.command()
 @click.argument("file", type=click.Path(path_type=Path))
 @_json
 def new(file: Path, as_json: bool) -> None:
     """Write a starter scenario, each key explained."""
     from importlib.resources import files
 
-    from collector.show.files import write_whole
-    from weather.errors import InputError, Problem
+    from collector.show.files import write_new
 
-    if file.exists():
-        raise InputError(
-            Problem(
-                where=str(file),
-                what="there is a file of this name already",
-                do="choose another name; nothing was changed",
-            )
-        )
-    if not file.parent.is_dir():
-        raise InputError(
-            Problem(where=str(file), what="no such folder", got=str(file.parent), do="make the folder first")
-        )
-    starter = (files("collector.build") / "data" / "starter.toml").read_text(encoding="utf-8")
-    write_whole(file, write=lambda path: path.write_text(starter, encoding="utf-8"))
+    write_new(file, (files("collector.build") / "data" / "starter.toml").read_text(encoding="utf-8"))
     _emit(
         {"written": str(file)},
         text=lambda: f"written: {file}\nnext: noonplate check {file}; noonplate year {file}\n",

@@ -31,6 +31,15 @@ def test_rounded_parts_add_up(parts, digits):
     assert all(abs(after - before) <= last * (1.0 + 1e-9) for before, after in zip(parts, rounded, strict=True))
 
 
+@given(st.lists(st.floats(-100.0, 2000.0), min_size=1, max_size=9), st.integers(0, 3), st.data())
+def test_rounded_parts_add_up_round_one_that_is_rounded_by_itself(parts, digits, data):
+    first = data.draw(st.integers(0, len(parts) - 1))
+    rounded, last = rounded_to_sum(parts, digits=digits, first=first), 10.0**-digits
+    assert rounded[first] == pytest.approx(round(parts[first], digits), abs=1e-9)
+    assert sum(rounded) == pytest.approx(round(sum(parts), digits), abs=1.01 * last)
+    assert all(abs(after - before) <= last * (1.0 + 1e-9) for before, after in zip(parts, rounded, strict=True))
+
+
 def test_the_page_adds_up_as_printed(laundry):
     names = ["sunlight on the plane", *(words for _, words in PATHS)]
     lines = year_text(laundry).splitlines()

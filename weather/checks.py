@@ -233,7 +233,8 @@ def _stamp(closure: Callable[[Floats], Floats], *, rule_min: float, file: str) -
     if used != rule_min:
         said.append(
             f"time stamps: the format's rule says {rule_min:+.0f} min to mid-hour, closure of GHI, DNI and DHI finds "
-            f"{found:+.1f} min (error {best:.1f} against {at_rule:.1f} W/m2): the shift found is used; check the file's clock and UTC offset"
+            f"{found:+.1f} min (error {best:.1f} against {at_rule:.1f} W/m2): the shift found is used; "
+            "check the file's clock and UTC offset"
         )
     if poor:
         said.append(

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import difflib
+import os.path
 from collections.abc import Mapping
 from dataclasses import replace
 from pathlib import Path
@@ -50,7 +51,7 @@ def open_weather(name: str, *, base: Path, place: Mapping[str, float] | None = N
         found = read(Path(pvlib.__file__).parent / "data" / file, place=place)
         return replace(found, file=f"{name} ({file}, from pvlib's package data)")
     path = base / name
-    if not path.exists() and "." not in Path(name).name:
+    if not os.path.exists(path) and "." not in Path(name).name:  # noqa: PTH110 # pathlib's raises where the system refuses a path
         close = difflib.get_close_matches(name, STATIONS, n=1)
         do = f"did you mean {close[0]!r}?" if close else "name a station, or give a file's path"
         what = "neither a bundled station nor a file"

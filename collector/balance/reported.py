@@ -17,7 +17,7 @@ from weather.year import Floats
 __all__ = ["ReportedNetwork", "ReportedUptake", "absorbed_by_report", "diffuse_modifier", "reported_stream"]
 
 WIND_OF_THE_TEST = 3.0  # m/s, from which ISO 9806 counts the wind
-TIGHT = 2e4  # W/m2K, between the node and a held mean: the node is the mean within 0.05 K
+TIGHT = 1e5  # W/m2K, between the node and a held mean: the node is the mean within 0.01 K
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+import os.path
 from pathlib import Path
 
 from collector.build.scenario import AbsorberTable, Scenario
 from collector.build.surfaces import Surface, read_surface
+from collector.build.table import Where
 from weather.errors import InputError, Problem
 
 __all__ = ["attached"]
@@ -14,7 +15,7 @@ __all__ = ["attached"]
 KEY = ("collector", "absorber")
 
 
-def attached(scenario: Scenario, *, where: Callable[[tuple[str | int, ...]], str], base: Path) -> Scenario:
+def attached(scenario: Scenario, *, where: Where, base: Path) -> Scenario:
     """Scenario with the spectrum or the stack that it names.
 
     Parameters
@@ -43,23 +44,24 @@ def attached(scenario: Scenario, *, where: Callable[[tuple[str | int, ...]], str
     return scenario.model_copy(update={"collector": scenario.collector.model_copy(update={"absorber": table})})
 
 
-def _surface(absorber: AbsorberTable, *, where: Callable[[tuple[str | int, ...]], str], base: Path) -> Surface:
+def _surface(absorber: AbsorberTable, *, where: Where, base: Path) -> Surface:
     key = "stack" if absorber.stack else "reflectance_csv"
     names = [absorber.stack] if absorber.stack else absorber.reflectance_csv or []
     place = where((*KEY, key))
+    there = {name for name in names if os.path.isfile(base / name)}  # noqa: PTH113 # pathlib's raises where the system refuses a path
     faults = [
         Problem(
             where=place, what=f"{'.'.join(KEY)}.{key}: no such file", got=repr(name), do=f"looked for {base / name}"
         )
         for name in names
-        if not (base / name).is_file()
+        if name not in there
     ]
     wrong = [name for name in names if (Path(name).suffix.lower() == ".toml") != (key == "stack")]
     allowed = "a TOML file" if key == "stack" else "CSV files; a stack in TOML goes under stack"
     faults += [
         Problem(where=place, what=f"{'.'.join(KEY)}.{key}: wrong kind of file", got=repr(name), allowed=allowed)
         for name in wrong
-        if (base / name).is_file()
+        if name in there
     ]
     if faults:
         raise InputError(faults)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import difflib
 import re
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -13,7 +14,7 @@ from collector.build.surfaces import read_surface
 from collector.physics.emittance_curve import EmittanceCurve
 from weather.errors import InputError, Problem
 
-__all__ = ["LEAST_EMITTANCE", "Candidate", "read_candidate"]
+__all__ = ["LEAST_EMITTANCE", "Candidate", "read_candidate", "read_candidates"]
 
 PAIR = re.compile(r"\s*(\d*\.?\d+)\s*/\s*(\d*\.?\d+)\s*")
 FILES = (".csv", ".txt", ".dat", ".toml")
@@ -93,7 +94,8 @@ def read_candidate(given: str, *, metal: bool = False) -> Candidate:
         return _pair(given, float(found[1]), float(found[2]))
     if Path(given).suffix.lower() in FILES or Path(given).is_file():
         return _from_files(given, metal=metal)
-    close = difflib.get_close_matches(given, shelf("coatings"), n=1, cutoff=0.5)
+    close = [name for name in shelf("coatings") if given.strip() and given.strip().lower() in name]
+    close = close or difflib.get_close_matches(given, shelf("coatings"), n=1, cutoff=0.5)
     raise InputError(
         Problem(
             where="--coating",
@@ -105,10 +107,37 @@ def read_candidate(given: str, *, metal: bool = False) -> Candidate:
     )
 
 
+def read_candidates(given: Sequence[str], *, metal: bool = False) -> list[Candidate]:
+    """Coatings that a user names.
+
+    Parameters
+    ----------
+    given, metal
+        As for `read_candidate`.
+
+    Returns
+    -------
+    list of Candidate
+        In the same order.
+
+    Raises
+    ------
+    InputError
+        The faults of all of them together.
+    """
+    found, faults = [], []
+    for name in given:
+        try:
+            found.append(read_candidate(name, metal=metal))
+        except InputError as fault:
+            faults += fault.problems
+    if faults:
+        raise InputError(faults)
+    return found
+
+
 def _constant(name: str, absorptance: float, emittance: float, *, basis: str) -> Candidate:
-    return Candidate(
-        name=name, basis=basis, absorptance=absorptance, emittance=emittance, radiating=None, notices=()
-    )
+    return Candidate(name=name, basis=basis, absorptance=absorptance, emittance=emittance, radiating=None, notices=())
 
 
 def _pair(given: str, absorptance: float, emittance: float) -> Candidate:

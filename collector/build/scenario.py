@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import math
 from itertools import pairwise
-from typing import Annotated, Any, Literal
+from typing import Annotated, Literal
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, PrivateAttr, WithJsonSchema, model_validator
-from pydantic_core import PydanticCustomError
+from pydantic import BeforeValidator, Field, PrivateAttr, WithJsonSchema, model_validator
+from scipy.constants import zero_Celsius
 
 from collector.build.catalogue import shelf
 from collector.build.surfaces import Surface
+from collector.build.table import Table, fault, quantity
 from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import freezing_point
 from collector.physics.glazing import slab_from_normal
@@ -50,39 +51,17 @@ COMPANIONS = {"reflectance_csv": ("hemispherical",)}  # keys that mean nothing w
 MOST_COVERS = 3
 
 
-def _quantity(low: float, high: float, unit: str, *, doc: str, default: Any = ...) -> Any:
-    return Field(default, ge=low, le=high, description=doc, json_schema_extra={"unit": unit})
-
-
-def _fault(message: str, *, key: str, allowed: str = "", got: str = "") -> PydanticCustomError:
-    context = {"key": key, "allowed": allowed, "got": got}
-    return PydanticCustomError("noonplate", message, context)
-
-
-class _Table(BaseModel):
-    model_config = ConfigDict(strict=True, extra="forbid", allow_inf_nan=False, frozen=True)
-
-    def _one_of(self, sets: Sequence[Sequence[str]], *, optional: bool = False) -> None:
-        """Refuse keys of two rival sets together, a set in part, and no set at all."""
-        begun = [keys for keys in sets if any(getattr(self, key) is not None for key in keys)]
-        choices = ", or ".join(" with ".join(keys) for keys in sets)
-        if not begun and not optional:
-            raise _fault("nothing given", key=sets[0][0], allowed=choices)
-        if len(begun) > 1:
-            given = [key for keys in begun for key in keys if getattr(self, key) is not None]
-            raise _fault("keys that exclude each other", key=given[-1], allowed=choices, got=", ".join(given))
-        for key in begun[0] if begun else ():
-            if getattr(self, key) is None:
-                raise _fault("required key missing beside its companions", key=key, allowed=choices)
+class _Catalogued(Table):
+    """A table of which some keys name what the catalogue holds."""
 
     def _named(self, key: str, *, kind: str) -> None:
         """Refuse a name that the catalogue does not hold."""
         name = getattr(self, key)
         if name is not None and name not in shelf(kind):
-            raise _fault("not in the catalogue", key=key, allowed=", ".join(shelf(kind)), got=repr(name))
+            raise fault("not in the catalogue", key=key, allowed=", ".join(shelf(kind)), got=repr(name))
 
 
-class PlaceTable(_Table):
+class PlaceTable(Table):
     """Where the collector stands."""
 
     weather: str = Field(min_length=1, description="a bundled station, or a weather file's path relative to this file")
@@ -90,26 +69,26 @@ class PlaceTable(_Table):
         description="ground reflectance, or 'file' for the weather file's own column",
         json_schema_extra={"unit": "", "allowed": "0 to 1, or 'file'"},
     )
-    latitude: float | None = _quantity(
+    latitude: float | None = quantity(
         -90.0, 90.0, "deg", doc="north positive; for weather files that carry none", default=None
     )
-    longitude: float | None = _quantity(-180.0, 180.0, "deg", doc="east positive", default=None)
-    altitude_m: float | None = _quantity(-450.0, 9000.0, "m", doc="above sea level", default=None)
-    utc_offset_h: float | None = _quantity(-12.0, 14.0, "h", doc="local standard time minus UTC", default=None)
+    longitude: float | None = quantity(-180.0, 180.0, "deg", doc="east positive", default=None)
+    altitude_m: float | None = quantity(-450.0, 9000.0, "m", doc="above sea level", default=None)
+    utc_offset_h: float | None = quantity(-12.0, 14.0, "h", doc="local standard time minus UTC", default=None)
 
 
-class MountingTable(_Table):
+class MountingTable(Table):
     """How it stands, and in which wind."""
 
-    tilt_deg: float = _quantity(0.0, 90.0, "deg", doc="from the horizontal")
-    azimuth_deg: float = _quantity(0.0, 360.0, "deg", doc="of the plane's normal, clockwise from north")
-    wind_factor: float | None = _quantity(
+    tilt_deg: float = quantity(0.0, 90.0, "deg", doc="from the horizontal")
+    azimuth_deg: float = quantity(0.0, 360.0, "deg", doc="of the plane's normal, clockwise from north")
+    wind_factor: float | None = quantity(
         0.0, 2.0, "", doc="wind at the collector over the file's; 1 if absent", default=None
     )
-    wind_height_m: float | None = _quantity(
+    wind_height_m: float | None = quantity(
         0.5, 200.0, "m", doc="or: brings the file's 10 m wind to this height", default=None
     )
-    building_length_m: float | None = _quantity(
+    building_length_m: float | None = quantity(
         2.0, 200.0, "m", doc="cube root of the building's volume, for the wind relation 'mitchell'", default=None
     )
 
@@ -119,20 +98,20 @@ class MountingTable(_Table):
         return self
 
 
-class CoverTable(_Table):
+class CoverTable(_Catalogued):
     """One cover, outermost first, and the gap beneath it."""
 
-    refractive_index: float | None = _quantity(1.0, 3.0, "", doc="of the cover's material", default=None)
-    extinction_per_m: float | None = _quantity(0.0, 1000.0, "1/m", doc="extinction coefficient", default=None)
-    thickness_mm: float | None = _quantity(0.01, 30.0, "mm", doc="of the cover", default=None)
-    transmittance: float | None = _quantity(0.05, 1.0, "", doc="or: solar, normal, of the whole cover", default=None)
-    reflectance: float | None = _quantity(0.0, 0.5, "", doc="solar, normal, of the whole cover", default=None)
+    refractive_index: float | None = quantity(1.0, 3.0, "", doc="of the cover's material", default=None)
+    extinction_per_m: float | None = quantity(0.0, 1000.0, "1/m", doc="extinction coefficient", default=None)
+    thickness_mm: float | None = quantity(0.01, 30.0, "mm", doc="of the cover", default=None)
+    transmittance: float | None = quantity(0.05, 1.0, "", doc="or: solar, normal, of the whole cover", default=None)
+    reflectance: float | None = quantity(0.0, 0.5, "", doc="solar, normal, of the whole cover", default=None)
     glass: str | None = Field(None, description="or: a cover of the catalogue")
-    emittance: float | None = _quantity(
+    emittance: float | None = quantity(
         0.01, 1.0, "", doc="long wave, either face; the catalogue's if a glass is named", default=None
     )
-    gap_mm: float = _quantity(1.0, 200.0, "mm", doc="gas layer beneath this cover")
-    heat_capacity_kJ_m2K: float | None = _quantity(
+    gap_mm: float = quantity(1.0, 200.0, "mm", doc="gas layer beneath this cover")
+    heat_capacity_kJ_m2K: float | None = quantity(
         0.05, 100.0, "kJ/m2K", doc="of the cover; the glass's own", default=None
     )
 
@@ -141,7 +120,7 @@ class CoverTable(_Table):
         self._one_of(RIVALS["cover"])
         self._named("glass", kind="covers")
         if self.emittance is None and self.glass is None:
-            raise _fault("required key missing", key="emittance", allowed="0.01 to 1")
+            raise fault("required key missing", key="emittance", allowed="0.01 to 1")
         if self.transmittance is not None and self.reflectance is not None:
             self._check_slab(self.transmittance, self.reflectance)
         return self
@@ -151,7 +130,7 @@ class CoverTable(_Table):
             slab_from_normal(transmittance=transmittance, reflectance=reflectance)
         except ValueError as reason:
             got = f"{transmittance:g} with reflectance {reflectance:g}"
-            raise _fault(f"{reason}", key="transmittance", allowed="together at most 1", got=got) from None
+            raise fault(f"{reason}", key="transmittance", allowed="together at most 1", got=got) from None
 
 
 _Files = Annotated[
@@ -162,11 +141,11 @@ _Files = Annotated[
 ]
 
 
-class AbsorberTable(_Table):
+class AbsorberTable(_Catalogued):
     """Plate, coating and tubes."""
 
-    absorptance: float | None = _quantity(0.05, 1.0, "", doc="solar, normal", default=None)
-    emittance: float | None = _quantity(0.01, 1.0, "", doc="thermal, hemispherical", default=None)
+    absorptance: float | None = quantity(0.05, 1.0, "", doc="solar, normal", default=None)
+    emittance: float | None = quantity(0.01, 1.0, "", doc="thermal, hemispherical", default=None)
     coating: str | None = Field(None, description="or: a coating of the catalogue")
     reflectance_csv: _Files | None = Field(
         None,
@@ -177,18 +156,16 @@ class AbsorberTable(_Table):
     hemispherical: Literal["metal"] | None = Field(
         None, description="takes a measured spectrum's emittance from normal to hemispherical, as a metal's"
     )
-    conductivity_W_mK: float | None = _quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)
+    conductivity_W_mK: float | None = quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)
     metal: str | None = Field(None, description="or: a plate material of the catalogue")
-    heat_capacity_kJ_m3K: float | None = _quantity(
+    heat_capacity_kJ_m3K: float | None = quantity(
         100.0, 5e3, "kJ/m3K", doc="of plate and tubes; the metal's own", default=None
     )
-    thickness_mm: float = _quantity(0.05, 20.0, "mm", doc="of the plate")
-    tube_pitch_mm: float = _quantity(3.0, 1000.0, "mm", doc="from tube to tube")
-    tube_outer_mm: float = _quantity(2.0, 100.0, "mm", doc="outer diameter")
-    tube_inner_mm: float = _quantity(1.0, 100.0, "mm", doc="inner diameter")
-    bond_W_mK: float | None = _quantity(
-        0.1, 1e5, "W/mK", doc="bond conductance; a perfect bond if absent", default=None
-    )
+    thickness_mm: float = quantity(0.05, 20.0, "mm", doc="of the plate")
+    tube_pitch_mm: float = quantity(3.0, 1000.0, "mm", doc="from tube to tube")
+    tube_outer_mm: float = quantity(2.0, 100.0, "mm", doc="outer diameter")
+    tube_inner_mm: float = quantity(1.0, 100.0, "mm", doc="inner diameter")
+    bond_W_mK: float | None = quantity(0.1, 1e5, "W/mK", doc="bond conductance; a perfect bond if absent", default=None)
     _surface: Surface | None = PrivateAttr(default=None)
 
     @property
@@ -209,28 +186,28 @@ class AbsorberTable(_Table):
         self._named("coating", kind="coatings")
         self._named("metal", kind="metals")
         if self.hemispherical is not None and self.reflectance_csv is None:
-            raise _fault("corrects a measured spectrum only", key="hemispherical", allowed="with reflectance_csv")
+            raise fault("corrects a measured spectrum only", key="hemispherical", allowed="with reflectance_csv")
         if self.tube_inner_mm >= self.tube_outer_mm:
             got, allowed = f"{self.tube_inner_mm:g} mm", f"below tube_outer_mm, {self.tube_outer_mm:g} mm"
-            raise _fault("tube without a wall", key="tube_inner_mm", allowed=allowed, got=got)
+            raise fault("tube without a wall", key="tube_inner_mm", allowed=allowed, got=got)
         if self.tube_outer_mm > self.tube_pitch_mm:
             got, allowed = f"{self.tube_outer_mm:g} mm", f"at most tube_pitch_mm, {self.tube_pitch_mm:g} mm"
-            raise _fault("tubes overlap", key="tube_outer_mm", allowed=allowed, got=got)
+            raise fault("tubes overlap", key="tube_outer_mm", allowed=allowed, got=got)
         return self
 
 
-class CasingTable(_Table):
+class CasingTable(_Catalogued):
     """Insulation behind the plate and around its edges."""
 
-    back_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="behind the plate")
-    back_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
+    back_thickness_mm: float = quantity(1.0, 500.0, "mm", doc="behind the plate")
+    back_conductivity_W_mK: float | None = quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
     back_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
-    back_heat_capacity_kJ_m3K: float | None = _quantity(1.0, 5e3, "kJ/m3K", doc="the insulation's own", default=None)
-    edge_thickness_mm: float = _quantity(1.0, 500.0, "mm", doc="around the edges")
-    edge_conductivity_W_mK: float | None = _quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
+    back_heat_capacity_kJ_m3K: float | None = quantity(1.0, 5e3, "kJ/m3K", doc="the insulation's own", default=None)
+    edge_thickness_mm: float = quantity(1.0, 500.0, "mm", doc="around the edges")
+    edge_conductivity_W_mK: float | None = quantity(0.005, 5.0, "W/mK", doc="of it", default=None)
     edge_insulation: str | None = Field(None, description="or: an insulation of the catalogue")
-    edge_heat_capacity_kJ_m3K: float | None = _quantity(1.0, 5e3, "kJ/m3K", doc="the insulation's own", default=None)
-    edge_height_mm: float = _quantity(0.0, 500.0, "mm", doc="of the edge that loses heat; 0 for none")
+    edge_heat_capacity_kJ_m3K: float | None = quantity(1.0, 5e3, "kJ/m3K", doc="the insulation's own", default=None)
+    edge_height_mm: float = quantity(0.0, 500.0, "mm", doc="of the edge that loses heat; 0 for none")
 
     @model_validator(mode="after")
     def _check(self) -> CasingTable:
@@ -241,32 +218,32 @@ class CasingTable(_Table):
         return self
 
 
-class ReportTable(_Table):
+class ReportTable(Table):
     """A collector known by its test report: coefficients of ISO 9806:2017, between mean fluid and air temperature."""
 
-    eta0: float = _quantity(0.05, 1.0, "", doc="peak efficiency for beam at normal incidence")
-    a1_W_m2K: float = _quantity(0.0, 60.0, "W/m2K", doc="heat loss coefficient")
-    a2_W_m2K2: float = _quantity(0.0, 1.0, "W/m2K2", doc="its rise with temperature", default=0.0)
-    a3_J_m3K: float = _quantity(0.0, 20.0, "J/m3K", doc="heat loss's dependence on wind", default=0.0)
-    a4: float = _quantity(0.0, 1.5, "", doc="dependence on long wave", default=0.0)
-    a5_kJ_m2K: float | None = _quantity(
+    eta0: float = quantity(0.05, 1.0, "", doc="peak efficiency for beam at normal incidence")
+    a1_W_m2K: float = quantity(0.0, 60.0, "W/m2K", doc="heat loss coefficient")
+    a2_W_m2K2: float = quantity(0.0, 1.0, "W/m2K2", doc="its rise with temperature", default=0.0)
+    a3_J_m3K: float = quantity(0.0, 20.0, "J/m3K", doc="heat loss's dependence on wind", default=0.0)
+    a4: float = quantity(0.0, 1.5, "", doc="dependence on long wave", default=0.0)
+    a5_kJ_m2K: float | None = quantity(
         0.1, 200.0, "kJ/m2K", doc="effective heat capacity; not counted if absent", default=None
     )
-    a6_s_m: float = _quantity(0.0, 0.2, "s/m", doc="peak efficiency's dependence on wind", default=0.0)
-    a7_J_m3K4: float = _quantity(-1.0, 1.0, "", doc="long wave's dependence on wind", default=0.0)
-    a8_W_m2K4: float = _quantity(0.0, 1e-4, "W/m2K4", doc="radiation loss", default=0.0)
-    b0: float | None = _quantity(0.0, 0.6, "", doc="beam incidence modifier 1 - b0 (1/cos - 1)", default=None)
+    a6_s_m: float = quantity(0.0, 0.2, "s/m", doc="peak efficiency's dependence on wind", default=0.0)
+    a7_J_m3K4: float = quantity(-1.0, 1.0, "", doc="long wave's dependence on wind", default=0.0)
+    a8_W_m2K4: float = quantity(0.0, 1e-4, "W/m2K4", doc="radiation loss", default=0.0)
+    b0: float | None = quantity(0.0, 0.6, "", doc="beam incidence modifier 1 - b0 (1/cos - 1)", default=None)
     incidence_deg: list[Annotated[float, Field(ge=0.0, le=90.0)]] | None = Field(
         None, description="or: angles of the beam incidence modifier, rising", json_schema_extra={"unit": "deg"}
     )
     K_beam: list[Annotated[float, Field(ge=0.0, le=1.5)]] | None = Field(
         None, description="modifier at those angles", json_schema_extra={"unit": ""}
     )
-    K_diffuse: float | None = _quantity(
+    K_diffuse: float | None = quantity(
         0.1, 1.2, "", doc="diffuse modifier; integrated from the beam's if absent", default=None
     )
-    area_m2: float = _quantity(0.01, 1000.0, "m2", doc="of a module, that the coefficients refer to")
-    tested_to_K: float | None = _quantity(5.0, 400.0, "K", doc="highest mean fluid above air in the test", default=None)
+    area_m2: float = quantity(0.01, 1000.0, "m2", doc="of a module, that the coefficients refer to")
+    tested_to_K: float | None = quantity(5.0, 400.0, "K", doc="highest mean fluid above air in the test", default=None)
 
     @model_validator(mode="after")
     def _check(self) -> ReportTable:
@@ -275,26 +252,26 @@ class ReportTable(_Table):
         if angles is not None and values is not None:
             if len(angles) != len(values) or len(angles) < 2:
                 got, allowed = f"{len(angles)} angles, {len(values)} values", "as many values as angles, at least two"
-                raise _fault("does not fit incidence_deg", key="K_beam", allowed=allowed, got=got)
+                raise fault("does not fit incidence_deg", key="K_beam", allowed=allowed, got=got)
             if any(later <= earlier for earlier, later in pairwise(angles)):
-                raise _fault("angles must rise", key="incidence_deg", allowed="rising from 0", got=str(angles))
+                raise fault("angles must rise", key="incidence_deg", allowed="rising from 0", got=str(angles))
         return self
 
 
-class CollectorTable(_Table):
+class CollectorTable(Table):
     """The module and how many of it."""
 
-    modules: int = Field(ge=1, le=100_000, description="how many")
-    length_m: float = _quantity(0.1, 30.0, "m", doc="along the tubes")
-    width_m: float = _quantity(0.05, 30.0, "m", doc="across the tubes")
-    capacity_kJ_m2K: float | None = _quantity(
+    modules: int = quantity(1, 100_000, "", doc="how many")
+    length_m: float = quantity(0.1, 30.0, "m", doc="along the tubes")
+    width_m: float = quantity(0.05, 30.0, "m", doc="across the tubes")
+    capacity_kJ_m2K: float | None = quantity(
         0.5,
         200.0,
         "kJ/m2K",
         doc="heat held per kelvin of the plate; from the materials if absent and all are known",
         default=None,
     )
-    gross_area_m2: float | None = _quantity(
+    gross_area_m2: float | None = quantity(
         0.01, 1000.0, "m2", doc="of a module, where results per gross area are wanted", default=None
     )
     cover: list[CoverTable] = Field(
@@ -312,10 +289,10 @@ class CollectorTable(_Table):
         area = self.length_m * self.width_m
         if self.gross_area_m2 is not None and self.gross_area_m2 < area:
             got, allowed = f"{self.gross_area_m2:g} m2", f"at least length x width, {area:g} m2"
-            raise _fault("gross area smaller than the collector", key="gross_area_m2", allowed=allowed, got=got)
+            raise fault("gross area smaller than the collector", key="gross_area_m2", allowed=allowed, got=got)
         if self.absorber is not None and self.absorber.tube_pitch_mm > self.width_m * 1e3:
             got, allowed = f"{self.absorber.tube_pitch_mm:g} mm", f"at most width_m, {self.width_m * 1e3:g} mm"
-            raise _fault("not one tube in the width", key="absorber.tube_pitch_mm", allowed=allowed, got=got)
+            raise fault("not one tube in the width", key="absorber.tube_pitch_mm", allowed=allowed, got=got)
         return self
 
     def _check_kind(self) -> None:
@@ -326,34 +303,40 @@ class CollectorTable(_Table):
         if self.tested is not None and (given or self.capacity_kJ_m2K is not None):
             got = ", ".join(["tested", *given, *(["capacity_kJ_m2K"] if self.capacity_kJ_m2K is not None else [])])
             allowed = "a test report, or cover, absorber and casing"
-            raise _fault("keys that exclude each other", key="tested", allowed=allowed, got=got)
+            raise fault("keys that exclude each other", key="tested", allowed=allowed, got=got)
         for key in ("absorber", "casing"):
             if self.tested is None and key not in given:
-                raise _fault(
+                raise fault(
                     "required key missing",
                     key=key,
                     allowed="[collector.absorber] and [collector.casing], or [collector.tested]",
                 )
 
 
-class FluidTable(_Table):
+class FluidTable(Table):
     """What flows, and how much."""
 
     name: Literal["water", "propylene glycol", "ethylene glycol"] = Field(description="heat carrier")
-    mass_fraction: float = _quantity(0.0, 0.6, "", doc="of glycol in water", default=0.0)
-    flow_kg_s_m2: float = _quantity(0.0005, 0.5, "kg/s m2", doc="per m2 of length x width")
+    mass_fraction: float = quantity(0.0, 0.6, "", doc="of glycol in water", default=0.0)
+    flow_kg_s_m2: float = quantity(0.0005, 0.5, "kg/s m2", doc="per m2 of length x width")
 
     @model_validator(mode="after")
     def _check(self) -> FluidTable:
         if (self.name == "water") != (self.mass_fraction == 0.0):
             allowed = "0 for water" if self.name == "water" else f"above 0 for {self.name}"
-            raise _fault(
+            raise fault(
                 "mass fraction does not fit the fluid",
                 key="mass_fraction",
                 allowed=allowed,
                 got=f"{self.mass_fraction:g}",
             )
         return self
+
+    @property
+    def coldest_C(self) -> float:  # noqa: N802 # the unit's symbol
+        """Temperature at which it begins to freeze, to a tenth on the warm side."""
+        freezing = freezing_point(self.name, mass_fraction=self.mass_fraction) - zero_Celsius
+        return math.ceil(round(10.0 * freezing, 6)) / 10.0 + 0.0
 
 
 _Temperature = Annotated[float, Field(ge=-50.0, le=200.0)]
@@ -365,20 +348,20 @@ _Temperatures = Annotated[
 ]
 
 
-class OperationTable(_Table):
+class OperationTable(Table):
     """The temperature that the load needs."""
 
-    inlet_C: float | None = _quantity(-50.0, 200.0, "C", doc="fluid temperature held at the inlet", default=None)
+    inlet_C: float | None = quantity(-50.0, 200.0, "C", doc="fluid temperature held at the inlet", default=None)
     mean_C: _Temperatures | None = Field(
         None,
         description="or: mean fluid temperature, one or a list",
         json_schema_extra={"unit": "C", "allowed": "a number or a list of numbers, each -50 to 200 C"},
     )
 
-    start_K: float | None = _quantity(
+    start_K: float | None = quantity(
         0.0, 50.0, "K", doc="plate above the fluid held at which the pump starts", default=None
     )
-    stop_K: float | None = _quantity(
+    stop_K: float | None = quantity(
         0.0, 50.0, "K", doc="plate above the fluid held at which the pump stops", default=None
     )
 
@@ -387,11 +370,11 @@ class OperationTable(_Table):
         self._one_of(RIVALS["operation"])
         if (self.stop_K or 0.0) > (self.start_K or 0.0):
             got, allowed = f"{self.stop_K:g} K", f"at most start_K, {self.start_K or 0.0:g} K"
-            raise _fault("the pump would stop before it starts", key="stop_K", allowed=allowed, got=got)
+            raise fault("the pump would stop before it starts", key="stop_K", allowed=allowed, got=got)
         return self
 
 
-class ModelsTable(_Table):
+class ModelsTable(Table):
     """Which published relation stands for each step; `noonplate models` lists them with their sources."""
 
     wind: Literal["watmuff", "mcadams", "mitchell", "jayamaha"] = Field(
@@ -413,7 +396,7 @@ class ModelsTable(_Table):
     )
 
 
-class Scenario(_Table):
+class Scenario(Table):
     """One collector at one place, run at one temperature or several."""
 
     title: str = Field(min_length=1, max_length=200, description="stands over every table and figure")
@@ -428,15 +411,17 @@ class Scenario(_Table):
     def _check(self) -> Scenario:
         if self.models.wind == "mitchell" and self.mounting.building_length_m is None:
             allowed = "the cube root of the building's volume in m"
-            raise _fault(
+            raise fault(
                 "required key missing: models.wind = 'mitchell' needs it",
                 key="mounting.building_length_m",
                 allowed=allowed,
             )
         key = "inlet_C" if self.operation.inlet_C is not None else "mean_C"
         coldest = self.operation.inlet_C if self.operation.inlet_C is not None else min(self.operation.mean_C or [0.0])
-        freezing = freezing_point(self.fluid.name, mass_fraction=self.fluid.mass_fraction) - 273.15
-        if coldest < freezing:
-            got, allowed = f"{coldest:g} C", f"above {freezing:.1f} C, where {self.fluid.name} begins to freeze"
-            raise _fault("the fluid is frozen", key=f"operation.{key}", allowed=allowed, got=got)
+        if coldest < self.fluid.coldest_C:
+            got, allowed = (
+                f"{coldest:g} C",
+                f"at least {self.fluid.coldest_C:.1f} C, where {self.fluid.name} begins to freeze",
+            )
+            raise fault("the fluid is frozen", key=f"operation.{key}", allowed=allowed, got=got)
         return self

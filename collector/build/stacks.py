@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import os.path
 from collections.abc import Iterator, Mapping, Sequence
 from pathlib import Path
 from typing import NamedTuple
@@ -10,7 +11,8 @@ from typing import NamedTuple
 import numpy as np
 
 from collector.build.spectra import IndexTable, read_index
-from collector.build.stackfile import LayerTable, StackFile, StackText, read_stack_file
+from collector.build.stackfile import LayerTable, StackFile, read_stack_file
+from collector.build.table import Key, Where
 from collector.physics.layers import Complexes, Film, bruggeman_1935, maxwell_garnett_1904
 from weather.errors import InputError, Problem
 from weather.year import Floats
@@ -53,8 +55,8 @@ def read_stack(path: Path, overrides: Sequence[str] = ()) -> FilmStack:
     InputError
         All faults of the file, or else all faults of the tables, together.
     """
-    described, source = read_stack_file(path, overrides=overrides)
-    tables = _tables(described, source=source)
+    described, where = read_stack_file(path, overrides=overrides)
+    tables = _tables(described, where=where, base=path.parent)
     grid, notices = _grid(described, tables=tables, path=path)
     films = tuple(Film(_index(layer, tables=tables, grid=grid), layer.thickness_nm * 1e-9) for layer in described.layer)
     said = [notice for table in tables.values() for notice in table.notices]
@@ -62,7 +64,7 @@ def read_stack(path: Path, overrides: Sequence[str] = ()) -> FilmStack:
     return FilmStack(described.title, grid, films, base, (*said, *notices, *_undilute(described)))
 
 
-def _named_files(described: StackFile) -> Iterator[tuple[tuple[str | int, ...], str]]:
+def _named_files(described: StackFile) -> Iterator[tuple[Key, str]]:
     """Every table of optical constants that the file names, with its key."""
     yield ("substrate", "index_csv"), described.substrate.index_csv
     for number, layer in enumerate(described.layer):
@@ -73,14 +75,14 @@ def _named_files(described: StackFile) -> Iterator[tuple[tuple[str | int, ...], 
             yield ("layer", number, "mixture", "host_csv"), layer.mixture.host_csv
 
 
-def _tables(described: StackFile, *, source: StackText) -> dict[str, IndexTable]:
+def _tables(described: StackFile, *, where: Where, base: Path) -> dict[str, IndexTable]:
     tables: dict[str, IndexTable] = {}
     faults: list[Problem] = []
     for key, name in _named_files(described):
-        file = source.path.parent / name
-        if not file.is_file():
+        file = base / name
+        if not os.path.isfile(file):  # noqa: PTH113 # a path that the system refuses is no file, where pathlib's raises
             what = f"{'.'.join(map(str, key))}: no such file"
-            faults.append(Problem(where=source.where(key), what=what, got=repr(name), do=f"looked for {file}"))
+            faults.append(Problem(where=where(key), what=what, got=repr(name), do=f"looked for {file}"))
         elif name not in tables:
             try:
                 tables[name] = read_index(file)

@@ -111,7 +111,7 @@ def _refuse_mixture(paths: Sequence[Path], *, stacks: Sequence[Path], overrides:
     if stacks and metal:
         what = "a stack's emittance is integrated over the hemisphere as it is"
         do = "leave the correction out"
-        raise InputError(Problem(where="hemispherical", what=what, got="'metal' with a stack", do=do))
+        raise InputError(Problem(where="--hemispherical", what=what, got="'metal' with a stack", do=do))
 
 
 def _of_stack(stack: FilmStack) -> Surface:

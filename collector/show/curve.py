@@ -64,16 +64,25 @@ def _coefficients(curve: Mapping[str, Any]) -> list[str]:
     for words, key, unit, form in rows:
         other = format(gross[key], form) if gross else "-"
         lines.append(f"  {words:<6} {unit:<28} {format(curve[key], form):>18} {other:>12}")
-    for key, unit in (("a3_J_m3K", "J/m3K"), ("a4", ""), ("a6_s_m", "s/m")):
-        if key in curve:
-            lines.append(f"  {key.split('_')[0]:<6} {unit:<28} {curve[key]:18.4f}")
     if curve["a5_kJ_m2K"] is not None:
         lines.append(f"  {'a5':<6} {'kJ/m2K':<28} {curve['a5_kJ_m2K']:18.2f}")
     largest, rms = curve["fit_largest_points"], curve["fit_rms_points"]
     lines.append(f"  fit: largest {largest:.2f}, rms {rms:.2f} percentage points of efficiency")
     sky, peak = curve["eta0_hemispherical"], curve["peak_W_per_module"]
     lines.append(f"  eta0 for blue-sky hemispherical light {sky:.4f}, peak {peak:.0f} W a module")
+    if "with_terms" in curve:
+        lines += _with_terms(curve["with_terms"])
     return lines
+
+
+def _with_terms(found: Mapping[str, Any]) -> list[str]:
+    """Coefficients fitted together with wind and long wave; eta0, a1 and a2 then mean 3 m/s and a sky as warm as the air."""
+    names = [f"{key.split('_')[0]} {value:.5g}" for key, value in found.items() if not key.startswith("fit")]
+    largest, rms = found["fit_largest_points"], found["fit_rms_points"]
+    return [
+        *hung(f"{', '.join(names)}", head="  with wind and long wave: "),
+        f"  their fit: largest {largest:.2f}, rms {rms:.2f} percentage points",
+    ]
 
 
 def _points(curve: Mapping[str, Any]) -> list[str]:

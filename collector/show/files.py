@@ -13,7 +13,7 @@ from typing import Any
 
 from weather.errors import InputError, Problem
 
-__all__ = ["csv_text", "json_text", "open_folder", "write_whole"]
+__all__ = ["csv_text", "json_text", "open_folder", "write_new", "write_whole"]
 
 
 def json_text(content: Mapping[str, Any]) -> str:
@@ -78,6 +78,31 @@ def open_folder(path: Path) -> None:
         ) from None
 
 
+def write_new(path: Path, text: str) -> None:
+    """Write a text where there is nothing yet.
+
+    Parameters
+    ----------
+    path
+        The file's place.
+    text
+        Its content.
+
+    Raises
+    ------
+    InputError
+        There is something of this name, or it can't be written.
+    """
+    if os.path.lexists(path):
+        what, do = "there is a file of this name already", "choose another name; nothing was changed"
+        raise InputError(Problem(where=str(path), what=what, do=do))
+    if not os.path.isdir(path.parent):  # noqa: PTH112 # pathlib's raises where the system refuses a path
+        raise InputError(
+            Problem(where=str(path), what="no such folder", got=str(path.parent), do="make the folder first")
+        )
+    write_whole(path, write=lambda place: place.write_text(text, encoding="utf-8"))
+
+
 def write_whole(path: Path, *, write: Callable[[Path], object]) -> None:
     """Write a file beside its place and move it there when it is complete.
 
@@ -93,16 +118,17 @@ def write_whole(path: Path, *, write: Callable[[Path], object]) -> None:
     InputError
         The disk refuses; nothing is left behind.
     """
-    handle, name = tempfile.mkstemp(dir=path.parent, prefix=f".{path.stem}-", suffix=path.suffix)
-    os.close(handle)
-    temporary = Path(name)
     try:
-        write(temporary)
-        temporary.chmod(0o644)
-        temporary.replace(path)
+        handle, name = tempfile.mkstemp(dir=path.parent, prefix=f".{path.stem[:50]}-", suffix=path.suffix)
+        os.close(handle)
+        temporary = Path(name)
+        try:
+            write(temporary)
+            temporary.chmod(0o644)
+            temporary.replace(path)
+        finally:
+            temporary.unlink(missing_ok=True)
     except OSError as fault:
         raise InputError(
             Problem(where=str(path), what=f"can't be written: {fault.strerror}", do="nothing was left half")
         ) from None
-    finally:
-        temporary.unlink(missing_ok=True)

@@ -50,7 +50,7 @@ BLOCK = 4  # runs side by side
 RUN = Mapping[str, Any]
 
 
-def rounded_to_sum(values: Sequence[float], *, digits: int) -> list[float]:
+def rounded_to_sum(values: Sequence[float], *, digits: int, first: int | None = None) -> list[float]:
     """Parts rounded so that they add up to their rounded sum.
 
     Parameters
@@ -59,6 +59,8 @@ def rounded_to_sum(values: Sequence[float], *, digits: int) -> list[float]:
         Parts.
     digits
         After the point.
+    first
+        Place of a part that is rounded by itself, as it is where it stands alone; the others take up what remains.
 
     Returns
     -------
@@ -68,8 +70,11 @@ def rounded_to_sum(values: Sequence[float], *, digits: int) -> list[float]:
     scale = 10.0**digits
     scaled = np.array(values, dtype=float) * scale
     down = np.floor(scaled)
-    short = round(scaled.sum()) - int(down.sum())
-    down[np.argsort(down - scaled, kind="stable")[:short]] += 1.0
+    rest = down - scaled
+    if first is not None:
+        down[first], rest[first] = round(round(values[first], digits) * scale), 1.0  # never raised
+    short = max(round(scaled.sum()) - int(down.sum()), 0)
+    down[np.argsort(rest, kind="stable")[:short]] += 1.0
     return [float(value) / scale + 0.0 for value in down]
 
 
@@ -140,8 +145,14 @@ def _span(run: RUN) -> tuple[float, float] | None:
     return (min([*found, run["useful_kWh_m2"]]), max([*found, run["useful_kWh_m2"]])) if found else None
 
 
+def _ways(run: RUN) -> list[float]:
+    """Where the sunlight went, as printed: the heat is the one of the headline, and all add up."""
+    keys = [key for key, _ in PATHS]
+    return rounded_to_sum([run[key] for key in keys], digits=1, first=keys.index("useful_kWh_m2"))
+
+
 def _sunlight(run: RUN) -> list[str]:
-    rows = rounded_to_sum([run[key] for key, _ in PATHS], digits=1)
+    rows = _ways(run)
     plane = max(sum(rows), 1e-9)
     longest = max(*(abs(value) for value in rows), 1e-9)
     lines = ["Where the year's sunlight went                     kWh/m2       %"]
@@ -199,8 +210,8 @@ def _sums(run: RUN) -> list[str]:
     )
     return [
         "How the sums close",
-        f"  sunlight less all that is listed above              {run['unaccounted_kWh_m2']:9.1e} kWh/m2",
-        f"  largest imbalance of any hour                       {run['residual_max_W_m2']:9.1e} W/m2, {unsolved}",
+        f"  sunlight less all that is listed above {run['unaccounted_kWh_m2']:9.1e} kWh/m2",
+        f"  largest imbalance of any hour          {run['residual_max_W_m2']:9.1e} W/m2, {unsolved}",
     ]
 
 
@@ -328,7 +339,7 @@ def _side_by_side(runs: Sequence[RUN], *, first: int) -> list[str]:
         return f"{words:<36}" + "".join(f"{cell:>11}" for cell in cells)
 
     names = dict(PATHS) | SHORTER
-    parts = [rounded_to_sum([run[key] for key, _ in PATHS], digits=1) for run in runs]
+    parts = [_ways(run) for run in runs]
     spans = [_span(run) or (run["useful_kWh_m2"],) * 2 for run in runs]
     lines = [row("kWh/m2 a year", (f"[{first + place}]" for place in range(len(runs))))]
     lines.append(row("sunlight on the plane", (f"{sum(part):.1f}" for part in parts)))

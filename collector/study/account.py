@@ -11,17 +11,25 @@ from scipy.constants import zero_Celsius
 
 from collector.balance.capacity import held_heat
 from collector.balance.losses import Network
-from collector.balance.model import Model, model_of
+from collector.balance.model import Model
 from collector.balance.operated import Operated
 from collector.balance.optics import optics_of
 from collector.balance.steady import SteadyState
-from collector.build.collector import Collector, collector_of
+from collector.build.collector import Collector
 from collector.build.scenario import CHOICES, Scenario
 from collector.study.cautions import cautions_of
 from collector.study.notices import notices_of
 from collector.study.plate import coating_of, read_notices
 from collector.study.sureness import Alternative, alternatives
-from collector.study.year import Conditions, HeatYear, heat_years, open_scenario_weather, standing, wind_at_collector
+from collector.study.year import (
+    Conditions,
+    HeatYear,
+    conditions_of,
+    heat_years,
+    open_scenario_weather,
+    standing,
+    wind_at_collector,
+)
 from weather.year import Floats, WeatherYear
 
 __all__ = ["HOUR_COLUMNS", "Run", "hours_table", "inspected", "runs_of"]
@@ -96,7 +104,8 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         Its weather, its collector at normal incidence, and what the weather reader had to say.
     """
     weather = open_scenario_weather(scenario, base=base)
-    model = model_of(collector_of(scenario), pressure=weather.pressure)
+    conditions = conditions_of(scenario, weather=weather)
+    model = conditions.model
     held = {key: getattr(scenario.operation, key) for key in ("inlet_C", "mean_C")}
     return {
         "title": scenario.title,
@@ -108,7 +117,7 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         "heat_held": _capacity(model),
         "weather": _weather(weather, scenario),
         "models": _models(scenario),
-        "notices": [*weather.notices, *read_notices(scenario)],
+        "notices": [*weather.notices, *conditions.plane.notices, *read_notices(scenario)],
     }
 
 

@@ -30,7 +30,7 @@ ANGLES = np.arange(0.0, 90.0, 10.0)  # deg
 STAGNATION = {"irradiance": 1000.0, "air_C": 30.0}  # standard stagnation, ISO 9806 (from memory)
 LABORATORY = {"irradiance": 950.0, "air_C": 22.0}  # where a laboratory might measure it and extrapolate from
 BLUE_SKY = (0.85, 0.15)  # beam and diffuse of hemispherical light, ISO 9806:2017 Annex B
-TERMS = ("a3_J_m3K", "a4", "a6_s_m")
+TERMS = ("eta0", "a1_W_m2K", "a2_W_m2K2", "a3_J_m3K", "a4", "a6_s_m")
 BOUNDS = {
     "irradiance": (300.0, 1500.0, "W/m2"),
     "air": (-40.0, 60.0, "C"),
@@ -127,7 +127,7 @@ def curve_of(scenario: Scenario, bench: Bench, *, terms: bool = False) -> dict[s
             for level, value in zip(levels, efficiency, strict=True)
         ],
         **fitted,
-        **(_terms(scenario, model, bench) if terms else {}),
+        **({"with_terms": _terms(scenario, model, bench)} if terms else {}),
         "a5_kJ_m2K": _effective_capacity(scenario, model, bench),
         **modifiers,
         "K_diffuse": k_diffuse,
@@ -234,8 +234,10 @@ def _terms(scenario: Scenario, model: Model, bench: Bench) -> dict[str, float]:
                 rows.append([g, -level, -(level**2), -beyond * level, longwave, -beyond * g])
     found, *_ = np.linalg.lstsq(np.array(rows), np.array(values), rcond=None)
     missed = 100.0 * (np.array(rows) @ found - np.array(values)) / bench.irradiance
-    named = dict(zip(TERMS, map(float, found[3:]), strict=True))
-    return named | {"terms_fit_rms_points": float(np.sqrt(np.mean(missed**2)))}
+    return dict(zip(TERMS, map(float, found), strict=True)) | {
+        "fit_largest_points": float(np.abs(missed).max()),
+        "fit_rms_points": float(np.sqrt(np.mean(missed**2))),
+    }
 
 
 def _effective_capacity(scenario: Scenario, model: Model, bench: Bench) -> float | None:

@@ -21,7 +21,7 @@ from collector.study.year import HeatYear, wind_at_collector
 from weather.sky import DEW_POINT_RANGE, NEEDS
 from weather.year import Floats, Mask
 
-__all__ = ["notices_of"]
+__all__ = ["common_notices", "notices_of"]
 
 HIGHEST_RAYLEIGH = 1e5  # Hollands et al. 1976
 LEAST_ASPECT = 12.0  # Hollands et al. 1976
@@ -47,6 +47,23 @@ def notices_of(year: HeatYear, scenario: Scenario, *, hours: Operated, still: St
     list of str
         Each with its count; empty if there is nothing to say.
     """
+    found = coating_of(year, scenario, hours=hours, still=still)
+    return common_notices(year, scenario, hours=hours, still=still) + (found["notices"] if found else [])
+
+
+def common_notices(year: HeatYear, scenario: Scenario, *, hours: Operated, still: SteadyState) -> list[str]:
+    """The same without what is said of the plate's coating.
+
+    Parameters
+    ----------
+    year, scenario, hours, still
+        As for `notices_of`.
+
+    Returns
+    -------
+    list of str
+        Each with its count.
+    """
     return [
         *year.conditions.weather.notices,
         *year.conditions.plane.notices,
@@ -57,7 +74,6 @@ def notices_of(year: HeatYear, scenario: Scenario, *, hours: Operated, still: St
         *_sky(year, scenario, on=hours.on),
         *_gaps(year, hours),
         *_report(year, hours),
-        *_coating(year, scenario, hours=hours, still=still),
     ]
 
 
@@ -122,11 +138,6 @@ def _gaps(year: HeatYear, hours: Operated) -> Iterator[str]:
             yield f"gap {number}: {above} running h with a Rayleigh number above 1e5, extrapolated"
         if gap.aspect < LEAST_ASPECT:
             yield f"gap {number}: length over thickness {gap.aspect:.1f}, relation found from {LEAST_ASPECT:.0f}: extrapolated"
-
-
-def _coating(year: HeatYear, scenario: Scenario, *, hours: Operated, still: SteadyState) -> list[str]:
-    found = coating_of(year, scenario, hours=hours, still=still)
-    return found["notices"] if found else []
 
 
 def _report(year: HeatYear, hours: Operated) -> Iterator[str]:

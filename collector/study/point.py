@@ -13,7 +13,7 @@ from collector.balance.model import model_of
 from collector.balance.steady import Feed, SteadyState, solve_running, solve_stagnation
 from collector.build.collector import Collector, collector_of
 from collector.build.scenario import Scenario
-from collector.physics.fluids import freezing_point, valid_range
+from collector.physics.fluids import valid_range
 from collector.study.cautions import at_stagnation, when_running
 from collector.study.plate import read_notices
 from collector.study.year import wind_coefficient
@@ -127,7 +127,12 @@ def solve_point(scenario: Scenario, point: Point) -> dict[str, Any]:
         "residual_W_m2": float(state.residual[0]),
         "converged": bool(state.converged[0]),
         "pressure_Pa": pressure,
-        "notices": [said, *([] if by_build else [BY_REPORT]), *read_notices(scenario), *_notices(scenario, state, feed)],
+        "notices": [
+            said,
+            *([] if by_build else [BY_REPORT]),
+            *read_notices(scenario),
+            *_notices(scenario, state, feed),
+        ],
         "cautions": _cautions(scenario, state, feed),
     }
 
@@ -165,9 +170,8 @@ def _feed(scenario: Scenario, point: Point) -> Feed | None:
     if held is None:
         return None
     fluid = scenario.fluid
-    freezing = freezing_point(fluid.name, mass_fraction=fluid.mass_fraction) - zero_Celsius
-    if held < freezing:
-        where, allowed = "--inlet" if point.inlet is not None else "--mean", f"above {freezing:.1f} C"
+    if held < fluid.coldest_C:
+        where, allowed = "--inlet" if point.inlet is not None else "--mean", f"at least {fluid.coldest_C:.1f} C"
         raise InputError(Problem(where=where, what=f"{fluid.name} is frozen", got=f"{held:g} C", allowed=allowed))
     return Feed(held + zero_Celsius, at_inlet=point.inlet is not None)
 

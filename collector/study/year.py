@@ -28,6 +28,7 @@ from weather.year import Floats, Mask, WeatherYear
 __all__ = [
     "Conditions",
     "HeatYear",
+    "conditions_of",
     "heat_years",
     "open_scenario_weather",
     "recoated",
@@ -115,14 +116,35 @@ def heat_years(
     list of HeatYear
         In the scenario's order of temperatures.
     """
+    conditions = conditions_of(scenario, weather=weather, sun=sun)
+    if not held:
+        conditions = replace(conditions, model=replace(conditions.model, capacity=None))
+    return [_at(conditions, uptake) for uptake in _uptakes(scenario, conditions.model)]
+
+
+def conditions_of(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = None) -> Conditions:
+    """Collector, sunlight and surroundings of a scenario's year, before anything is solved.
+
+    Parameters
+    ----------
+    scenario
+        Checked.
+    weather
+        The year it gets, n hours; without a column that the scenario needs it is refused.
+    sun
+        At mid-hour, if it is known already.
+
+    Returns
+    -------
+    Conditions
+        The same at every fluid temperature.
+    """
     sun = sun or sun_position(weather)
     model = model_of(collector_of(scenario), pressure=weather.pressure)
     plane = _plane(scenario, weather=weather, sun=sun)
     around = _surroundings(scenario, weather=weather, sun=sun)
     absorbed = model.absorbed(plane, around)
-    model = model if held else replace(model, capacity=None)
-    conditions = Conditions(weather=weather, plane=plane, around=around, absorbed=absorbed, model=model)
-    return [_at(conditions, uptake) for uptake in _uptakes(scenario, model)]
+    return Conditions(weather=weather, plane=plane, around=around, absorbed=absorbed, model=model)
 
 
 def _at(conditions: Conditions, uptake: Uptake) -> HeatYear:
