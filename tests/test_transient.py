@@ -40,7 +40,7 @@ def year() -> HeatYear:
 
 def drift_of(year: HeatYear, *, capacity=CAPACITY, **changes):
     conditions, uptake = year.conditions, replace(year.uptake, **changes)
-    return solve_drift(conditions.network, conditions.around, conditions.absorbed, capacity=capacity, uptake=uptake)
+    return solve_drift(conditions.model.network, conditions.around, conditions.absorbed, capacity=capacity, uptake=uptake)
 
 
 @pytest.fixture(scope="module")
@@ -52,7 +52,7 @@ def slope_of(year: HeatYear, hour: int):
     """Rate of change of the plate's temperature in an hour, K/s, by the scalar solution."""
     around, absorbed = year.conditions.around, year.conditions.absorbed
     condition = {name: float(getattr(around, name)[hour]) for name in ("t_air", "t_sky", "t_ground", "h_wind")}
-    condition |= {"pressure": year.conditions.network.pressure, "longwave_view": "tilted"}
+    condition |= {"pressure": year.conditions.model.network.pressure, "longwave_view": "tilted"}
     suns, sun, feed = [float(absorbed.covers[0][hour])], float(absorbed.plate[hour]), year.uptake.feed.temperature
 
     def rate(_, state):
@@ -135,7 +135,7 @@ def test_endless_flow_is_a_fixed_mean_temperature(year):
     at_inlet = replace(year.uptake, stream=fast)
     at_mean = replace(year.uptake, stream=fast, feed=Feed(year.uptake.feed.temperature, at_inlet=False))
     heat = [
-        operate(conditions.network, conditions.around, conditions.absorbed, uptake=uptake)[0].useful.sum()
+        operate(conditions.model.network, conditions.around, conditions.absorbed, uptake=uptake)[0].useful.sum()
         for uptake in (at_inlet, at_mean)
     ]
     assert heat[0] == pytest.approx(heat[1], rel=1e-4)

@@ -52,7 +52,6 @@ class _Line(NamedTuple):
     step: Step
     drawn: Floats
     t_mean: Floats
-    t_outlet: Floats
 
     def at(self, t: Floats) -> Floats:
         """Net gain at another temperature."""
@@ -135,7 +134,7 @@ def solve_drift(
             for part in (first, second):
                 model.refilm(part, flow, t_film)
         ends = ends + shift
-    return _drift(first, second, absorbed, end=end, rate=model.rate)
+    return _drift(model, first, second, end=end, flow=flow)
 
 
 class _Model(NamedTuple):
@@ -191,14 +190,16 @@ class _Model(NamedTuple):
             if known is None
             else self._renewed(known, on, nodes=nodes, flow=flow)
         )
-        weight = _weight(np.where(np.isnan(fall), line.fall, fall) / self.rate)
+        speed = np.maximum(np.where(np.isnan(fall), line.fall, fall) / self.rate, 1e-3)
+        lasting = np.exp(-speed)
+        weight = 1.0 / (1.0 - lasting) - 1.0 / speed
         damping = 1.0 + weight * line.fall / self.rate
         gain, way = line.at(start), np.where(on, self.stops, self.starts) - start
         rise = gain / self.rate / damping
         by_start, mean_by_start = 1.0 - line.fall / self.rate / damping, 1.0 / damping
         share = np.ones_like(start)
         left = line.at(start + way) / np.where(gain == 0.0, np.inf, gain)
-        cut = (left < 1.0) & (left > np.exp(-line.fall / self.rate)) & (gain * way > 0.0)
+        cut = np.flatnonzero((left < 1.0) & (left > lasting) & (gain * way > 0.0))
         x = -np.log(left[cut])  # the exponential gets to the pump's temperature when this much of the gain is left
         share[cut], weight[cut], by_start[cut] = x * self.rate / line.fall[cut], _weight(x), -self.rate / gain[cut]
         rise[cut], mean_by_start[cut] = way[cut], 1.0 - weight[cut]
@@ -246,20 +247,19 @@ class _Model(NamedTuple):
         hours = np.flatnonzero((nodes != known.nodes).any(axis=0) | (on != known.on))
         if hours.size > 0.7 * on.size:
             return self._line(np.arange(on.size), on, nodes=nodes, flow=flow)
-        line: _Line = _put(known.line, self._line(hours, on[hours], nodes=nodes[:, hours], flow=flow), hours)
-        return line
+        _put(known.line, self._line(hours, on[hours], nodes=nodes[:, hours], flow=flow), hours)
+        return known.line
 
     def _line(self, hours: Hours, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
         whole = hours.size == self.absorbed.plate.size
         sun, facing = (self.absorbed, self.facing) if whole else (self.absorbed.at(hours), self.facing.at(hours))
         step = self.network.step(facing, sun_on_covers=sun.covers, nodes=nodes)
-        t_plate, here = nodes[-1], Flow(*flow[:, hours[on]])
-        coupling = self.uptake.coupling(step.slope[on], flow=here)
-        useful = self.uptake.useful(coupling, t_plate=t_plate[on])
-        conductance, drawn, t_mean, t_outlet = np.zeros(on.size), np.zeros(on.size), t_plate.copy(), t_plate.copy()
-        conductance[on], drawn[on] = coupling.conductance, useful
-        t_mean[on] = self.uptake.mean(coupling, t_plate=t_plate[on], useful=useful)
-        t_outlet[on] = self.uptake.outlet(flow=here, useful=useful)
+        t_plate, runs = nodes[-1], np.flatnonzero(on)
+        coupling = self.uptake.coupling(step.slope[runs], flow=Flow(*flow[:, hours[runs]]))
+        useful = self.uptake.useful(coupling, t_plate=t_plate[runs])
+        conductance, drawn, t_mean = np.zeros(on.size), np.zeros(on.size), t_plate.copy()
+        conductance[runs], drawn[runs] = coupling.conductance, useful
+        t_mean[runs] = self.uptake.mean(coupling, t_plate=t_plate[runs], useful=useful)
         return _Line(
             t=t_plate,
             net=sun.plate - step.loss - drawn,
@@ -267,18 +267,16 @@ class _Model(NamedTuple):
             step=step,
             drawn=drawn,
             t_mean=t_mean,
-            t_outlet=t_outlet,
         )
 
 
-def _put(whole: Any, part: Any, hours: Hours) -> Any:
-    """Return some hours of arrays, however nested in tuples and lists, put in their places in a copy of the whole."""
+def _put(whole: Any, part: Any, hours: Hours) -> None:
+    """Put some hours of arrays, however nested in tuples and lists, in their places."""
     if isinstance(whole, np.ndarray):
-        merged = whole.copy()
-        merged[..., hours] = part
-        return merged
-    inner = [_put(one, other, hours) for one, other in zip(whole, part, strict=True)]
-    return type(whole)(*inner) if isinstance(whole, tuple) else inner
+        whole[..., hours] = part
+        return
+    for one, other in zip(whole, part, strict=True):
+        _put(one, other, hours)
 
 
 def _weight(x: Floats) -> Floats:
@@ -322,7 +320,7 @@ def _moved(part: _Part, memories: tuple[_Memory, _Memory], *, moved: Floats) -> 
     return part.nodes + moves, np.where((largest > FITTED) | np.isnan(known), part.line.fall, known)
 
 
-def _drift(first: _Part, second: _Part, absorbed: Absorbed, *, end: Floats, rate: float) -> Operated:
+def _drift(model: _Model, first: _Part, second: _Part, *, end: Floats, flow: Floats) -> Operated:
     """Hours put together of their parts, each balance taken afresh."""
     parts = (first, second)
 
@@ -336,12 +334,14 @@ def _drift(first: _Part, second: _Part, absorbed: Absorbed, *, end: Floats, rate
     convection, radiation, back, edge = (summed((a * first.runs, b * second.runs)) for a, b in paths)
     running = Losses(convection, radiation, back, edge, np.zeros((0, end.size)))
     totals = (first.line.step.losses.total * ~first.runs, second.line.step.losses.total * ~second.runs)
-    idle, stored = summed(totals), rate * (end - first.start)
-    t_mean, t_outlet = first.line.t_mean.copy(), first.line.t_outlet.copy()
-    residual = np.abs(absorbed.plate - useful - running.total - idle - stored)
+    idle, stored = summed(totals), model.rate * (end - first.start)
+    t_mean = first.line.t_mean.copy()
+    t_outlet = t_mean.copy()
+    residual = np.abs(model.absorbed.plate - useful - running.total - idle - stored)
     for part in parts:
         hours = part.hours[part.on]
-        t_mean[hours], t_outlet[hours] = part.line.t_mean[part.on], part.line.t_outlet[part.on]
+        t_mean[hours] = part.line.t_mean[part.on]
+        t_outlet[hours] = model.uptake.outlet(flow=Flow(*flow[:, hours]), useful=part.line.drawn[part.on])
         open_covers = np.abs(part.line.step.losses.cover_residual).max(axis=0, initial=0.0)
         residual[part.hours] = np.maximum(residual[part.hours], open_covers)
     return Operated(

@@ -154,7 +154,9 @@ class AbsorberTable(_Catalogued):
     )
     stack: str | None = Field(None, min_length=1, description="or: a coating layer by layer, a TOML file's path")
     hemispherical: Literal["metal"] | None = Field(
-        None, description="takes a measured spectrum's emittance from normal to hemispherical, as a metal's"
+        None,
+        description="takes a measured spectrum's emittance from normal to hemispherical, as a metal's",
+        json_schema_extra={"allowed": "'metal'"},
     )
     conductivity_W_mK: float | None = quantity(0.1, 500.0, "W/mK", doc="of the plate", default=None)
     metal: str | None = Field(None, description="or: a plate material of the catalogue")

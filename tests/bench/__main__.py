@@ -71,11 +71,11 @@ def _in_process() -> list[Row]:
     conditions = year.conditions
 
     def solve() -> object:
-        return operate(conditions.network, conditions.around, conditions.absorbed, uptake=year.uptake)
+        return operate(conditions.model.network, conditions.around, conditions.absorbed, uptake=year.uptake)
 
     def drift() -> object:
         return solve_drift(
-            conditions.network, conditions.around, conditions.absorbed, capacity=HELD, uptake=year.uptake
+            conditions.model.network, conditions.around, conditions.absorbed, capacity=HELD, uptake=year.uptake
         )
 
     actions: dict[str, Callable[[], object]] = {
@@ -116,8 +116,8 @@ def _in_process() -> list[Row]:
 def _design(year: HeatYear) -> float:
     """What each further design on a site costs: its optics, its loss network, its fluid, its year."""
     conditions = year.conditions
-    absorbed = absorbed_power(optics_of(conditions.collector), conditions.plane)
-    running, _ = operate(conditions.network, conditions.around, absorbed, uptake=year.uptake)
+    absorbed = absorbed_power(optics_of(year.conditions.model.collector), conditions.plane)
+    running, _ = operate(conditions.model.network, conditions.around, absorbed, uptake=year.uptake)
     return float(running.useful.sum())
 
 

@@ -40,7 +40,12 @@ def compiled_loop(conditions: Conditions, uptake: Uptake):
     solve.restype = ctypes.c_long
     shutil.rmtree(folder)
 
-    network, absorber, stream, feed = conditions.network, conditions.collector.absorber, uptake.stream, uptake.feed
+    network, absorber, stream, feed = (
+        conditions.model.network,
+        conditions.model.collector.absorber,
+        uptake.stream,
+        uptake.feed,
+    )
     (gap,) = network.gaps
     tilt = math.radians(network.tilt_deg)
     build = Build(

@@ -19,7 +19,12 @@ def hour_by_hour(conditions: Conditions, uptake: Uptake, hours: np.ndarray) -> n
 
 
 def _hour(conditions: Conditions, uptake: Uptake, hour: int) -> float:
-    network, absorber, stream, feed = conditions.network, conditions.collector.absorber, uptake.stream, uptake.feed
+    network, absorber, stream, feed = (
+        conditions.model.network,
+        conditions.model.collector.absorber,
+        uptake.stream,
+        uptake.feed,
+    )
     (gap,) = network.gaps
     around = conditions.around
     t_air, h_wind = float(around.t_air[hour]), float(around.h_wind[hour])
