@@ -199,7 +199,7 @@ class _Model(NamedTuple):
         by_start, mean_by_start = 1.0 - line.fall / self.rate / damping, 1.0 / damping
         share = np.ones_like(start)
         left = line.at(start + way) / np.where(gain == 0.0, np.inf, gain)
-        cut = np.flatnonzero((left < 1.0) & (left > lasting) & (gain * way > 0.0))
+        cut = np.flatnonzero((left < 1.0) & (left > np.exp(-line.fall / self.rate)) & (gain * way > 0.0))
         x = -np.log(left[cut])  # the exponential gets to the pump's temperature when this much of the gain is left
         share[cut], weight[cut], by_start[cut] = x * self.rate / line.fall[cut], _weight(x), -self.rate / gain[cut]
         rise[cut], mean_by_start[cut] = way[cut], 1.0 - weight[cut]

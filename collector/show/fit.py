@@ -34,24 +34,26 @@ def fit_text(fit: Mapping[str, Any]) -> str:
     lines = [
         f"{len(fit['terms'])} {words}, from {fit['points']} points",
         "",
-        f"{'':<34} {'value':>10} {'std error':>10} {'t-ratio':>8}",
+        f"{'':<42} {'value':>10} {'std error':>10} {'t-ratio':>8}",
     ]
     lines += [_row(term) for term in fit["terms"]]
     lines += ["", f"  residuals rms {fit['rms_W_m2']:.2f} W/m2; intervals of {100 * fit['confidence']:.0f} %:"]
     for term in fit["terms"]:
         if term["value"] is not None:
-            lines.append(f"    {term['name']:<34} {term['low']:10.4g} to {term['high']:.4g}")
+            lines.append(f"    {term['name']:<38} {term['low']:10.4g} to {term['high']:.4g}")
     blocks = [lines, _told_apart(fit), _correlations(fit), *remarks([fit])]
     return "\n\n".join("\n".join(block) for block in blocks if block) + "\n"
 
 
 def _row(term: Mapping[str, Any]) -> str:
     value = "not known" if term["value"] is None else f"{term['value']:.4g}"
-    return f"  {term['name']:<32} {value:>10} {min(term['standard_error'], 1e9):10.2g} {term['t_ratio']:8.1f}"
+    return f"  {term['name']:<40} {value:>10} {min(term['standard_error'], 1e9):10.2g} {term['t_ratio']:8.1f}"
 
 
 def _told_apart(fit: Mapping[str, Any]) -> list[str]:
     said = [line for words in fit["cannot_tell"] for line in hung(words, head="  - ")]
+    if fit["kind"] == "report" and any(not term["supported"] for term in fit["terms"]):
+        said.append("  - --drop takes out, one by one, what is not supported")
     said += [f"  - dropped on request: {', '.join(fit['dropped'])}"] if fit["dropped"] else []
     return ["What these points can't tell", *(said or ["  - nothing of what was asked"])]
 
