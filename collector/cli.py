@@ -377,7 +377,8 @@ def coatings(
         from collector.show.coating_files import write_coatings
 
         open_folder(out)
-        click.echo(f"written to {out}: {', '.join(write_coatings(found.account, plane=found.plane, out=out))}", err=True)
+        names = tuple(write_coatings(found.account, plane=found.plane, out=out))
+        click.echo(f"written to {out}: {', '.join(names)}", err=True)
     _emit(found.account, text=lambda: coatings_text(found.account), as_json=as_json)
     if not found.sound:
         click.echo("noonplate: hours without convergence: see the result", err=True)

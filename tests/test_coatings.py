@@ -45,9 +45,7 @@ def refused(*arguments: object) -> list[str]:
 
 
 def pair(absorptance: float, emittance: float, name: str = "one") -> Candidate:
-    return Candidate(
-        name=name, basis="", absorptance=absorptance, emittance=emittance, radiating=None, notices=()
-    )
+    return Candidate(name=name, basis="", absorptance=absorptance, emittance=emittance, radiating=None, notices=())
 
 
 @pytest.fixture(scope="module")
@@ -62,9 +60,7 @@ def steady(greensboro):
     table = scenario.collector.model_copy(update={"capacity_kJ_m2K": None})
 
     def comparing(*candidates: Candidate, operation=None, **asked):
-        changed = scenario.model_copy(
-            update={"collector": table, "operation": operation or scenario.operation}
-        )
+        changed = scenario.model_copy(update={"collector": table, "operation": operation or scenario.operation})
         return compared(changed, candidates, weather=greensboro, asked=Asked(**asked))
 
     return comparing
@@ -99,8 +95,10 @@ def test_a_spectrum_in_several_files(tmp_path):
     assert joined.absorptance == pytest.approx(read_candidate(SELECTIVE).absorptance, abs=1e-6)
 
 
-NEITHER = "--coating: neither a coating of the catalogue, nor a pair, nor a file; got {}; allowed: a name of `noonplate " \
-    "catalogue coatings`, a pair such as 0.95/0.05, a CSV spectrum, a stack in TOML"  # fmt: skip
+NEITHER = (
+    "--coating: neither a coating of the catalogue, nor a pair, nor a file; got {}; allowed: a name of "
+    "`noonplate catalogue coatings`, a pair such as 0.95/0.05, a CSV spectrum, a stack in TOML"
+)
 CANDIDATE_FAULTS = {
     "soot": [NEITHER.format("'soot'")],
     "cermet": [NEITHER.format("'cermet'") + "; did you mean 'vacuum-deposited cermet'?"],
@@ -129,7 +127,10 @@ ASKED_FAULTS = {
     "price": ({"price": -1.0}, ["--price: out of range; got -1; allowed: 0 to 1000 money per kWh"]),
     "two": (
         {"life": 0.0, "discount": 1.0},
-        ["--life: out of range; got 0; allowed: 1 to 60 years", "--discount: out of range; got 1; allowed: 0 to 0.3 a year"],
+        [
+            "--life: out of range; got 0; allowed: 1 to 60 years",
+            "--discount: out of range; got 1; allowed: 0 to 0.3 a year",
+        ],
     ),
     "ageing": ({"aged": (2.0, 0.0)}, ["--aged: out of range; got 2,0; allowed: each -0.9 to 0.9"]),
     "activation alone": (
@@ -187,7 +188,12 @@ def test_each_year_is_the_years_own(five):
     """A coating's heat, stagnation and emittance are those that `year` tells of it."""
     for row, option in zip(
         five.account["coatings"],
-        (None, "reflectance_csv=coatings/selective.csv", "stack=coatings/cermet-stack.toml", "coating=black chrome on nickel"),
+        (
+            None,
+            "reflectance_csv=coatings/selective.csv",
+            "stack=coatings/cermet-stack.toml",
+            "coating=black chrome on nickel",
+        ),
         strict=False,
     ):
         overrides = [f"collector.absorber.{option}"] if option else []
@@ -276,7 +282,9 @@ def test_exchange_rate_is_in_the_published_range(steady, mean_C, published):
 def test_ranges_are_held_at_what_is_possible(steady):
     found = steady(pair(1.0, 0.01), pair(0.99, 0.01), sigma_alpha=0.01).account
     assert found["response"]["draws_clipped"] > 500
-    said = f"{found['response']['draws_clipped']} of 8000 drawn absorptances and emittances held at the ends of the ranges"
+    said = (
+        f"{found['response']['draws_clipped']} of 8000 drawn absorptances and emittances held at the ends of the ranges"
+    )
     assert any(words.startswith(said) for words in found["notices"])
     for row in found["coatings"]:
         assert all(np.isfinite(row["useful_interval_kWh_m2"]))
@@ -383,14 +391,18 @@ def test_the_seed_fixes_the_result(steady):
 @pytest.mark.parametrize("as_json", [True, False])
 def test_a_comparison_that_does_not_converge(monkeypatch, as_json):
     monkeypatch.setattr("collector.balance.steady.MOST_ITERATIONS", 1)
-    found = run("coatings", LAUNDRY, "--coating", "0.95/0.05", "--coating", "0.94/0.05", *(["--json"] if as_json else []))
+    found = run(
+        "coatings", LAUNDRY, "--coating", "0.95/0.05", "--coating", "0.94/0.05", *(["--json"] if as_json else [])
+    )
     assert found.exit_code == 3
     assert found.stderr == "noonplate: hours without convergence: see the result\n"
     assert "not to be trusted" in re.sub(r"\s+", " ", found.stdout)
 
 
 def test_study_opens_the_scenarios_weather():
-    found = study_coatings(read_scenario(POOL), [pair(0.94, 0.9), pair(0.9, 0.2)], base=POOL.parent, asked=Asked(draws=500))
+    found = study_coatings(
+        read_scenario(POOL), [pair(0.94, 0.9), pair(0.9, 0.2)], base=POOL.parent, asked=Asked(draws=500)
+    )
     assert found.account["weather"]["place"] == "Miami FL"
     assert len(found.account["coatings"]) == 2
 

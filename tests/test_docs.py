@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import shlex
 from pathlib import Path
 
 import click
@@ -21,6 +22,17 @@ def test_the_page_in_the_readme_is_the_products():
     result = CliRunner().invoke(main, ["year", str(ROOT / shown[1])])
     assert result.exit_code == 0
     assert result.stdout.startswith(shown[2])
+
+
+def test_the_table_of_coatings_in_the_readme_is_the_products(monkeypatch):
+    shown = re.search(r"<!-- table of coatings -->\n```text\n(.*?)```", README, re.DOTALL)
+    command = re.search(r"^\.venv/bin/noonplate (coatings .*)$", README, re.MULTILINE)
+    assert shown
+    assert command
+    monkeypatch.chdir(ROOT)
+    result = CliRunner().invoke(main, shlex.split(command[1]))
+    assert result.exit_code == 0
+    assert shown[1] in result.stdout
 
 
 @pytest.mark.parametrize("name", main.commands)

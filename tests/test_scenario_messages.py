@@ -375,25 +375,25 @@ FAULTS = {
     ),
     "no such glass": (
         '"low-iron 4 mm"', '"low-iron 5 mm"', "glass",
-        f"collector.cover.0.glass: not in the catalogue; got 'low-iron 5 mm'; allowed: {', '.join(shelf('covers'))}",
+        f"collector.cover.0.glass: not in the catalogue; got 'low-iron 5 mm'; allowed: {', '.join(map(repr, shelf('covers')))}",
     ),
     "no such metal": (
         'metal = "copper"', 'metal = "cooper"', "metal",
-        f"collector.absorber.metal: not in the catalogue; got 'cooper'; allowed: {', '.join(shelf('metals'))}",
+        f"collector.absorber.metal: not in the catalogue; got 'cooper'; allowed: {', '.join(map(repr, shelf('metals')))}",
     ),
     "no such coating": (
         "absorptance = 0.93\nemittance = 0.07", 'coating = "soot"', "coating",
-        f"collector.absorber.coating: not in the catalogue; got 'soot'; allowed: {', '.join(shelf('coatings'))}",
+        f"collector.absorber.coating: not in the catalogue; got 'soot'; allowed: {', '.join(map(repr, shelf('coatings')))}",
     ),
     "no such back insulation": (
         '"mineral wool"', '"straw"', "back_insulation",
         ("collector.casing.back_insulation: not in the catalogue; got 'straw'; "
-        f"allowed: {', '.join(shelf('insulation'))}"),
+        f"allowed: {', '.join(map(repr, shelf('insulation')))}"),
     ),
     "no such edge insulation": (
         "edge_conductivity_W_mK = 0.045", 'edge_insulation = "hay"', "edge_insulation",
         ("collector.casing.edge_insulation: not in the catalogue; got 'hay'; "
-        f"allowed: {', '.join(shelf('insulation'))}"),
+        f"allowed: {', '.join(map(repr, shelf('insulation')))}"),
     ),
     "more light than there is": (  # 0.88 + 0.13 is above 1
         "reflectance = 0.09", "reflectance = 0.13", "transmittance",
@@ -730,7 +730,7 @@ def test_no_such_place(told, option):
         ),
         (
             "collector.absorber.metal=tin",
-            f"not in the catalogue; got 'tin'; allowed: {', '.join(shelf('metals'))}",
+            f"not in the catalogue; got 'tin'; allowed: {', '.join(map(repr, shelf('metals')))}",
         ),
     ],
 )

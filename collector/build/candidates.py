@@ -125,7 +125,8 @@ def read_candidates(given: Sequence[str], *, metal: bool = False) -> list[Candid
     InputError
         The faults of all of them together.
     """
-    found, faults = [], []
+    found: list[Candidate] = []
+    faults: list[Problem] = []
     for name in given:
         try:
             found.append(read_candidate(name, metal=metal))

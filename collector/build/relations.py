@@ -19,6 +19,15 @@ FIXED = {
     "plate": "fin, bond and tube: F'; exponential along the flow: F_R; Duffie & Beckman, Sec. 6.5-6.7, at the loss's true slope",
     "tube, laminar": "mean over the length with both profiles developing; Gnielinski, VDI Heat Atlas, ch. G1 (from memory)",
     "tube, turbulent": "Gnielinski 1976, Int. Chem. Eng. 16, 359; from Re 2300 to 10000 linear between the two",
+    "sun on a coating": "reflectance weighted with ASTM G173-03, global for absorptance; as in ASTM E903 (from memory)",
+    "heat of a coating": "reflectance weighted with Planck's curve, straight lines integrated exactly; Siegel & Howell, Ch. 3",
+    "emittance, plate's": "at the plate's temperature in every hour, also for what it takes up (grey); within 1e-6",
+    "normal to whole": "a metal's: Hagen & Rubens 1903, Ann. Phys. 11, 873, in Fresnel's equations over the hemisphere",
+    "films": "Abeles 1950, Ann. Physique 5, 596, as recursion of Rouard 1937, Ann. Physique 7, 291 (both from memory)",
+    "mixtures in films": "Maxwell Garnett 1904, Phil. Trans. A 203, 385; Bruggeman 1935, Ann. Phys. 416, 636",
+    "coatings, intervals": "normal draws on a polynomial through solved years; Box & Wilson 1951, J. R. Stat. Soc. B 13, 1",
+    "coatings, ageing": "PC = -d_alpha + w d_eps, ISO 22975-3:2014 (weight from memory); Arrhenius 1889, Z. Phys. Chem. 4, 226",
+    "coatings, worth": "present value, (1 - (1 + d)^-n) / d; levelised cost of heat, Louvet et al. 2019, Solar Energy 193, 85",
 }
 
 

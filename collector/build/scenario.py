@@ -58,7 +58,7 @@ class _Catalogued(Table):
         """Refuse a name that the catalogue does not hold."""
         name = getattr(self, key)
         if name is not None and name not in shelf(kind):
-            raise fault("not in the catalogue", key=key, allowed=", ".join(shelf(kind)), got=repr(name))
+            raise fault("not in the catalogue", key=key, allowed=", ".join(map(repr, shelf(kind))), got=repr(name))
 
 
 class PlaceTable(Table):

@@ -42,8 +42,12 @@ def draw_ranking(found: Mapping[str, Any]) -> Figure:
         filled = row["told_apart"] or row["coating"] == 1
         face = LOSS if row["coating"] == 1 else HEAT if filled else "white"
         edge = LOSS if row["coating"] == 1 else HEAT
-        axes.plot(row["difference_kWh_m2"], place, "o", markersize=8, markerfacecolor=face, markeredgecolor=edge, zorder=3)
-    labels = [f"[{row['coating']}] {_short(row['name'])}\n{row['absorptance']:.3f} / {row['emittance']:.3f}" for row in rows]
+        axes.plot(
+            row["difference_kWh_m2"], place, "o", markersize=8, markerfacecolor=face, markeredgecolor=edge, zorder=3
+        )
+    labels = [
+        f"[{row['coating']}] {_short(row['name'])}\n{row['absorptance']:.3f} / {row['emittance']:.3f}" for row in rows
+    ]
     axes.set_yticks(range(len(rows)), labels)
     axes.set_ylim(len(rows) - 0.5, -0.5)
     right = axes.secondary_yaxis("right")
@@ -142,7 +146,7 @@ def _numbered(axes: Axes, found: Mapping[str, Any], *, plane: tuple[Floats, Floa
 
 def _near(one: Mapping[str, Any], other: Mapping[str, Any], *, width: float, height: float) -> bool:
     apart = (one["absorptance"] - other["absorptance"]) / width, (one["emittance"] - other["emittance"]) / height
-    return abs(apart[0]) < 0.09 and abs(apart[1]) < 0.07
+    return bool(abs(apart[0]) < 0.09 and abs(apart[1]) < 0.07)
 
 
 def _beside(row: Mapping[str, Any]) -> str:
@@ -162,5 +166,7 @@ def _sheet(found: Mapping[str, Any], *, title: str, height: float) -> tuple[Figu
     axes.tick_params(labelsize=9, colors=INK)
     whole = f"{title}: {found['title']}"
     figure.suptitle(whole, fontsize=11, fontweight="bold", color=INK, x=0.01, ha="left", wrap=True)
-    axes.set_title(f"{temperature_words(found)}, weather {found['weather']['place']}", fontsize=9, color=INK, loc="left")
+    axes.set_title(
+        f"{temperature_words(found)}, weather {found['weather']['place']}", fontsize=9, color=INK, loc="left"
+    )
     return figure, axes

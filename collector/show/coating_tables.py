@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from typing import Any
 
 from collector.show.surface_tables import said_blocks
@@ -136,7 +136,9 @@ def _worth(found: Row) -> list[str]:
     lines = ["Present value of the difference to 1, per m2: the extra price that breaks even"]
     for row in found["coatings"][1:]:
         low, high = row["worth_interval_per_m2"]
-        lines.append(f"{row['coating']:3d} {row['worth_per_m2']:+28.2f}     95 % interval {low:+10.2f} to {high:+10.2f}")
+        lines.append(
+            f"{row['coating']:3d} {row['worth_per_m2']:+28.2f}     95 % interval {low:+10.2f} to {high:+10.2f}"
+        )
     words = (
         f"At {asked['price']:g} per kWh for {asked['life']:g} years, discounted at {100 * asked['discount']:g} % a year: "
         f"{asked['annuity']:.2f} times the yearly value. In the money of the price."
@@ -181,7 +183,8 @@ def _temperatures(found: Row) -> list[str]:
         return []
     lines = ["Plate of coating 1, C        running h   standing h   pump never on h"]
     lines += [
-        f"  {row['from_C']:6.0f} to {row['to_C']:4.0f} {row['running_h']:20.0f} {row['standing_h']:12.0f} {row['never_run_h']:17.0f}"
+        f"  {row['from_C']:6.0f} to {row['to_C']:4.0f} {row['running_h']:20.0f} {row['standing_h']:12.0f}"
+        f" {row['never_run_h']:17.0f}"
         for row in found["coatings"][0]["temperatures"]
     ]
     return lines
@@ -203,5 +206,5 @@ def _ascii(words: str) -> str:
     return words.encode("ascii", "replace").decode("ascii")
 
 
-def _hung(words: str, *, head: str) -> Sequence[str]:
+def _hung(words: str, *, head: str) -> list[str]:
     return textwrap.wrap(words, WIDTH, initial_indent=head, subsequent_indent=" " * len(head), break_on_hyphens=False)

@@ -38,13 +38,19 @@ def draw_surface(found: Mapping[str, Any], *, curves: Mapping[str, tuple[Floats,
     axes.tick_params(labelsize=9, colors=INK)
     working, stagnation = found["working"], found["stagnation"]
     axes.fill_between(*_um(curves["sun"]), color=SUN, linewidth=0.0, label="sunlight, ASTM G173 global")
-    _line(axes, curves["working"], WARM, f"black body at {working['t_C']:.0f} °C, working", dash=(4.0, 2.0))
-    _line(axes, curves["stagnation"], HEAT, f"black body at {stagnation['t_C']:.0f} °C, stagnation", dash=(1.2, 1.6))
-    _line(axes, curves["reflectance"], INK, "reflectance of the surface", width=2.2)
+    lines: list[tuple[str, str, str, dict[str, Any]]] = [
+        ("working", f"black body at {working['t_C']:.0f} °C, working", WARM, {"linestyle": (0, (4.0, 2.0))}),
+        ("stagnation", f"black body at {stagnation['t_C']:.0f} °C, stagnation", HEAT, {"linestyle": (0, (1.2, 1.6))}),
+        ("reflectance", "reflectance of the surface", INK, {"linewidth": 2.2}),
+    ]
+    for name, label, colour, style in lines:
+        axes.plot(*_um(curves[name]), color=colour, label=label, **({"linewidth": 1.6} | style))
     _axes(axes, found)
     title = f"Reflectance: {found['name']}"
     figure.suptitle(title, fontsize=11, fontweight="bold", color=INK, x=0.01, ha="left", wrap=True)
-    words = f"absorptance {found['absorptance']['global']['value']:.3f}; emittance {_used(working)} and {_used(stagnation)}"
+    words = (
+        f"absorptance {found['absorptance']['global']['value']:.3f}; emittance {_used(working)} and {_used(stagnation)}"
+    )
     axes.set_title(f"{words}\n{found['basis']}", fontsize=9, color=INK, loc="left")
     figure.legend(*axes.get_legend_handles_labels(), frameon=False, loc="outside lower center", ncols=2, fontsize=9)
     return figure
@@ -60,19 +66,6 @@ def _axes(axes: Axes, found: Mapping[str, Any]) -> None:
     axes.set_ylabel("reflectance; power over its own peak")
     axes.grid(color=FAINT, linewidth=0.6)
     axes.set_axisbelow(True)
-
-
-def _line(
-    axes: Axes,
-    curve: tuple[Floats, Floats],
-    colour: str,
-    label: str,
-    *,
-    dash: tuple[float, float] | None = None,
-    width: float = 1.6,
-) -> None:
-    style: Any = "solid" if dash is None else (0, dash)
-    axes.plot(*_um(curve), color=colour, linewidth=width, linestyle=style, label=label)
 
 
 def _um(curve: tuple[Floats, Floats]) -> tuple[Floats, Floats]:

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 import numpy as np
 from scipy.constants import zero_Celsius
 
@@ -40,7 +38,11 @@ def hours_by_temperature(hours: Operated, still: SteadyState) -> list[dict[str, 
         "never_run_h": _binned(stopped, np.ones_like(stopped), edges),
     }
     return [
-        {"from_C": float(edges[row]), "to_C": float(edges[row + 1]), **{key: float(c[row]) for key, c in columns.items()}}
+        {
+            "from_C": float(edges[row]),
+            "to_C": float(edges[row + 1]),
+            **{key: float(c[row]) for key, c in columns.items()},
+        }
         for row in range(edges.size - 1)
     ]
 
@@ -70,6 +72,8 @@ def equivalent_hours(
     """
 
     def at(t_plate: Floats) -> float:
-        return float(arrhenius_1889(t_plate, reference=test_temperature + zero_Celsius, activation=1e3 * activation).sum())
+        return float(
+            arrhenius_1889(t_plate, reference=test_temperature + zero_Celsius, activation=1e3 * activation).sum()
+        )
 
     return {"operated_h": at(hours.t_plate), "never_run_h": at(still.t_plate)}

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 from weather.errors import InputError, Problem
@@ -63,7 +64,12 @@ class Asked:
 
     def __post_init__(self) -> None:
         wrong = [
-            Problem(where=_option(name), what="out of range", got=f"{value:g}", allowed=f"{low:g} to {high:g} {unit}".strip())
+            Problem(
+                where=_option(name),
+                what="out of range",
+                got=f"{value:g}",
+                allowed=f"{low:g} to {high:g} {unit}".strip(),
+            )
             for name, (low, high, unit) in BOUNDS.items()
             if (value := getattr(self, name)) is not None and not low <= value <= high
         ]
@@ -74,7 +80,9 @@ class Asked:
             given, lacking = ("activation", "test_temperature")
             if self.activation is None:
                 given, lacking = lacking, given
-            wrong.append(Problem(where=_option(given), what=f"needs {_option(lacking)} beside it", do="give both or neither"))
+            wrong.append(
+                Problem(where=_option(given), what=f"needs {_option(lacking)} beside it", do="give both or neither")
+            )
         if wrong:
             raise InputError(wrong)
 
@@ -89,7 +97,7 @@ class Asked:
         """
         if self.discount == 0.0:
             return self.life
-        return (1.0 - (1.0 + self.discount) ** -self.life) / self.discount
+        return (1.0 - math.pow(1.0 + self.discount, -self.life)) / self.discount
 
     @property
     def criterion(self) -> float | None:

@@ -92,7 +92,9 @@ def refuse_unfit(scenario: Scenario, candidates: Sequence[Candidate]) -> None:
     """
     if len(candidates) < 2:
         what, got = "nothing to compare with", f"{len(candidates)} coating"
-        raise InputError(Problem(where="--coating", what=what, got=got, allowed="two or more", do="give --coating again"))
+        raise InputError(
+            Problem(where="--coating", what=what, got=got, allowed="two or more", do="give --coating again")
+        )
     if scenario.collector.absorber is None:
         what, do = "a collector known by its test report has no coating to change", "describe it by its build"
         raise InputError(Problem(where="collector.tested", what=what, do=do))
@@ -154,9 +156,7 @@ def _response(base: HeatYear, solved: Sequence[Coated], *, asked: Asked) -> Resp
         absorber = replace(built.absorber, absorptance=absorptance, emittance=emittance, radiating=None)
         return recoated(base, absorber=absorber).useful_kWh_m2
 
-    known = [
-        (one.absorber.absorptance, one.emittance, one.heat) for one in solved if one.candidate.radiating is None
-    ]
+    known = [(one.absorber.absorptance, one.emittance, one.heat) for one in solved if one.candidate.radiating is None]
     return fit_response(heat, plane=plane, known=known)
 
 
@@ -177,9 +177,7 @@ def _drawn(solved: Sequence[Coated], response: Response, *, asked: Asked) -> tup
     return heat + moved, int(np.count_nonzero(held != drawn))
 
 
-def _row(
-    number: int, solved: Sequence[Coated], heats: Floats, *, response: Response, asked: Asked
-) -> dict[str, Any]:
+def _row(number: int, solved: Sequence[Coated], heats: Floats, *, response: Response, asked: Asked) -> dict[str, Any]:
     one, first = solved[number], solved[0]
     difference, spread = one.heat - first.heat, heats[number] - heats[0]
     low, high = np.percentile(spread, INTERVAL)
@@ -267,7 +265,9 @@ def _notices(scenario: Scenario, solved: Sequence[Coated], *, clipped: int, aske
             said.append(f"{one.candidate.name}: no hour runs; its emittance is the one at 100 C")
     if clipped:
         whole = 2 * len(solved) * asked.draws
-        said.append(f"{clipped} of {whole} drawn absorptances and emittances held at the ends of the ranges that were solved")
+        said.append(
+            f"{clipped} of {whole} drawn absorptances and emittances held at the ends of the ranges that were solved"
+        )
     return list(dict.fromkeys(said))
 
 

@@ -116,7 +116,9 @@ def _unlike_metal(surface: Surface) -> list[str]:
         return []
     _, unlike = hemispherical_of_normal(emittance(surface.normal, t=TABLE + zero_Celsius).value)
     count = int(np.count_nonzero(unlike))
-    said = f"the metal's correction leaves {count} of the table's {TABLE.size} emittances as they are: they are above 0.5"
+    said = (
+        f"the metal's correction leaves {count} of the table's {TABLE.size} emittances as they are: they are above 0.5"
+    )
     return [said] if count else []
 
 

@@ -16,7 +16,11 @@ from pvlib import solarposition
 from collector.balance.optics import absorbed_power, optics_of
 from collector.balance.steady import operate
 from collector.balance.transient import solve_drift
+from collector.build.candidates import read_candidates
 from collector.build.reading import read_scenario
+from collector.build.scenario import Scenario
+from collector.study.asked import Asked
+from collector.study.coatings import compared
 from collector.study.year import HeatYear, heat_years, open_scenario_weather, standing
 from tests.bench.compiled import compiled_loop
 from tests.bench.script import hour_by_hour
@@ -107,10 +111,40 @@ def _in_process() -> list[Row]:
         ("one more design and plane", "sunlight on the plane too / same", best["year"] / sun, None),
         ("against the script one would write", "brentq hour by hour / ours", script / best["solve"], 200.0),
     ]
+    rows += _coated(year)
     if loop:
         rows.append(("distance to a compiled loop (C, -O2)", "ours / the loop", best["solve"] / best["loop"], None))
     print(f"sun position of the year {1e3 * sun:.1f} ms, design-year {1e3 * best['design']:.2f} ms on this machine\n")
     return rows
+
+
+def _coated(year: HeatYear) -> list[Row]:
+    """A year whose emittance follows the plate's temperature, and a comparison of coatings, against plain years."""
+    weather = year.conditions.weather
+    plain = read_scenario(SCENARIO)
+    spectrum = read_scenario(SCENARIO, overrides=["collector.absorber.reflectance_csv=coatings/selective.csv"])
+    coatings = SCENARIO.parent / "coatings"
+    names = [
+        "0.95/0.05",
+        str(coatings / "selective.csv"),
+        str(coatings / "cermet-stack.toml"),
+        "black chrome on nickel",
+    ]
+    sun = sun_position(weather)
+
+    def several() -> object:
+        candidates = read_candidates([*names, "selective paint"])
+        return compared(plain, candidates, weather=weather, asked=Asked(draws=500))
+
+    def years(scenario: Scenario, count: int) -> Callable[[], object]:
+        return lambda: [heat_years(scenario, weather=weather, sun=sun) for _ in range(count)]
+
+    best = _best({"plain": years(plain, 1), "spectrum": years(spectrum, 1)})
+    best |= _best({"25": years(plain, 25), "coatings": several}, rounds=5)
+    return [
+        ("year with a spectrum", "the year / plain year", best["spectrum"] / best["plain"], 1.25),
+        ("coatings, 5 x 500 draws", "files read too / 25 plain years", best["coatings"] / best["25"], 1.0),
+    ]
 
 
 def _design(year: HeatYear) -> float:
