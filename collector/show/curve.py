@@ -18,7 +18,7 @@ __all__ = ["curve_text", "draw_curves"]
 LINES = (  # colour and dash: told apart in grey and by the colour-blind
     ("#a3341f", "-"), ("#1f6f8b", "--"), ("#8a6d1f", "-."), ("#22272b", ":"), ("#7a5195", (0, (5, 1, 1, 1, 1, 1))),
 )  # fmt: skip
-OPTICAL, HEAT, INK, FAINT = "#f3e3b3", "#dfe3e6", "#22272b", "#d8dcdf"
+OPTICAL, HEAT, INK, FAINT = "#f7efd2", "#c3cad0", "#22272b", "#d8dcdf"
 
 
 def curve_text(curve: Mapping[str, Any]) -> str:
@@ -142,10 +142,10 @@ def draw_curves(curves: Sequence[Mapping[str, Any]]) -> Figure:
         x, y = _line(curve)
         axes.plot(x, y, color=colour, linestyle=dash, linewidth=2.0, label=_label(curve))
         points = [(point["reduced_m2K_W"], point["efficiency"]) for point in curve["points"]]
-        axes.plot(*zip(*points, strict=True), "o", color=colour, markersize=4.5, markerfacecolor="white")
+        axes.plot(*zip(*points, strict=True), "o", color=colour, markersize=4.5, markerfacecolor="white", zorder=4)
     if len(curves) == 1:
         _explain(axes, curves[0])
-    axes.set_xlim(left=0.0)
+    axes.set_xlim(left=-0.0006)
     axes.set_ylim(0.0, 1.0)
     axes.set_xlabel("(mean fluid - air) / irradiance, m²K/W")
     axes.set_ylabel("efficiency, per area of length x width")
