@@ -386,6 +386,30 @@ def coatings(
 
 
 @main.command()
+@click.argument("climate", type=click.Path(path_type=Path))
+@click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the year's chance.")
+@click.option("--out", type=click.Path(path_type=Path), metavar="FILE", required=True, help="EPW file to write.")
+@click.option("--clear-sky", is_flag=True, help="No cloud all year: an upper bound, not the climate's year.")
+@click.option("--replace", is_flag=True, help="Write over the file if there is one.")
+@_json
+def synthesise(climate: Path, seed: int, out: Path, clear_sky: bool, replace: bool, as_json: bool) -> None:
+    """An hourly year from twelve monthly means.
+
+    CLIMATE is a TOML file: a place, and for each month the sunlight and the air temperature, and more where known, as in
+    scenarios/climate/tarn-hollow.toml. The year is written as an EPW file that a scenario can name.
+    """
+    from collector.build.climatefile import read_climate
+    from collector.show.climate import refuse_taken, synthesis_text, write_year
+    from collector.study.synthesis import synthetic_year
+
+    refuse_taken(out, replace=replace, source=climate)
+    found, text = synthetic_year(read_climate(climate), seed=seed, clear_sky=clear_sky, source=climate.name)
+    write_year(out, text, replace=replace)
+    _emit({"written": str(out)} | found, text=lambda: synthesis_text(found), as_json=as_json)
+    click.echo(f"written: {out}", err=True)
+
+
+@main.command()
 @click.argument("file", type=click.Path(path_type=Path))
 @_json
 def new(file: Path, as_json: bool) -> None:

@@ -26,6 +26,7 @@ from tests.weather_samples import (
 )
 from weather.errors import InputError
 from weather.files import read
+from weather.formats.known import ALLOWED
 from weather.sky import MODELS, NEEDS, available_models, sky_temperature
 from weather.stations import STATIONS, open_weather
 from weather.sun import sun_position
@@ -233,12 +234,12 @@ def test_path_counts_from_the_base(tmp_path):
 
 @pytest.mark.parametrize("content", [b"", b" \n\n \n"])
 def test_empty(told, content):
-    assert told(content) == ["made.dat: weather file is empty; allowed: a TMY3, TMY2 or EPW text file"]
+    assert told(content) == [f"made.dat: weather file is empty; allowed: a text file: {ALLOWED}"]
 
 
 def test_binary(told):
     assert told(b"LOCATION,\x00\x01\x02") == [
-        "made.dat: weather file is binary, not text; allowed: a TMY3, TMY2 or EPW text file"
+        f"made.dat: weather file is binary, not text; allowed: a text file: {ALLOWED}"
     ]
 
 
@@ -252,7 +253,10 @@ def test_binary(told):
     ids=["other table", "long line", "EPW without its first word"],
 )
 def test_unknown_format(told, text, shown):
-    assert told(text) == [f"made.dat:1: weather file of unknown format; got {shown}; allowed: TMY3, TMY2 or EPW"]
+    assert told(text) == [
+        f"made.dat:1: weather file of unknown format; got {shown}; allowed: {ALLOWED}; "
+        "for another table in CSV name its columns in the scenario, under [place.columns]"
+    ]
 
 
 # --- the made files are read by pvlib, and hold what they say
@@ -596,7 +600,7 @@ def test_gap_too_long(told, name):
     ]
 
 
-@pytest.mark.parametrize("name", ["dni", "dhi"])
+@pytest.mark.parametrize("name", ["t_air", "wind"])
 def test_column_missing_throughout(told, name):
     assert told(epw_text(set_epw(epw_rows(), name, hours=range(8760), value=EPW_MISSING[name]))) == [
         (
@@ -606,11 +610,30 @@ def test_column_missing_throughout(told, name):
     ]
 
 
-def test_column_that_a_tmy3_lacks(told):
+@pytest.mark.parametrize("name", ["ghi", "dni", "dhi"])
+def test_one_column_of_radiation_missing_throughout_is_made_by_closure(of, plain, name):
+    weather = of(epw_text(set_epw(epw_rows(), name, hours=range(8760), value=EPW_MISSING[name])))
+    assert weather.made == f"{name} by closure"
+    assert weather.notices[0].startswith(f"the file has no {name.upper()}: made by closure, ")
+    assert weather.stamp.found_min is None
+    high = np.cos(np.radians(sun_position(plain).apparent_zenith_deg)) > 0.1
+    assert getattr(weather, name)[high] == pytest.approx(getattr(plain, name)[high], abs=3.0)  # refraction, rounding
+
+
+def test_radiation_missing_throughout(told):
+    rows = epw_rows()
+    for name in ("ghi", "dni"):
+        set_epw(rows, name, hours=range(8760), value=EPW_MISSING[name])
+    assert told(epw_text(rows)) == [
+        "made.dat: not enough radiation in the file; got DHI; allowed: GHI alone, or two of GHI, DNI and DHI, or all three; "
+        "use a file that has them, or name their columns under [place.columns]"
+    ]
+
+
+def test_column_that_a_tmy3_lacks(of):
     made = Tmy3()
     made.names[made.names.index("DNI (W/m^2)")] = "Something else"
-    (message,) = told(made.text)
-    assert message.startswith("made.dat, 2006-01-01 01:00: dni is missing throughout; got 8760 h missing in 1 gaps; ")
+    assert of(made.text).made == "dni by closure"
 
 
 def test_optional_columns_with_a_long_gap_are_left_out_and_told(of):

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from scipy.constants import zero_Celsius
 
+from weather.closure import BEAM, closure_of
 from weather.errors import InputError, Problem
 from weather.sun import Sun
 from weather.year import Floats, Mask, Site, Stamp
@@ -192,24 +193,14 @@ def find_stamp(
     InputError
         The closure is best 5 hours from the rule, where the search ends.
     """
-    beam = dni > 50.0
+    beam = dni > BEAM
     if np.count_nonzero(beam) < ENOUGH_BEAM:
         stamp = Stamp(rule_min=rule_min, found_min=None, used_min=rule_min, rmse_w_m2=None, rmse_unshifted_w_m2=None)
         return (
             stamp,
             f"too little beam ({np.count_nonzero(beam)} h) to find the time-stamp convention: the format's rule is used",
         )
-    lit = {"ghi": ghi[beam], "dni": dni[beam], "dhi": dhi[beam]}
-    latitude, declination = np.radians(latitude_deg), np.radians(sun.declination_deg[beam])
-    level, swing = np.sin(latitude) * np.sin(declination), np.cos(latitude) * np.cos(declination)
-
-    def closure(shifts: Floats) -> Floats:
-        """Error at each shift [W/m2]."""
-        turned = np.radians(sun.hour_angle_deg[beam] + shifts[:, np.newaxis] / 4.0)
-        cosine = np.maximum(level + swing * np.cos(turned), 0.0)
-        error = lit["dhi"] + lit["dni"] * cosine - lit["ghi"]
-        return np.asarray(np.sqrt(np.mean(error**2, axis=1)))
-
+    closure = closure_of(sun, latitude_deg=latitude_deg, ghi=ghi, dni=dni, dhi=dhi)
     return _stamp(closure, rule_min=rule_min, file=file)
 
 

@@ -2,26 +2,51 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 from pvlib.clearsky import simplified_solis
-from scipy.constants import zero_Celsius
 
 from weather.errors import Problem
 from weather.sun import Sun, sun_at
-from weather.year import Floats, Mask, Site
+from weather.year import Floats, Site
 
-__all__ = ["CLEAN_SKY", "STATED_SKY", "YEAR", "Climate", "Frame", "Sky", "frame_of", "under_clear_sky"]
+__all__ = [
+    "BOUNDS",
+    "CLEAN_SKY",
+    "MONTHS",
+    "STATED_SKY",
+    "YEAR",
+    "Climate",
+    "Frame",
+    "Indices",
+    "Sky",
+    "climate_problems",
+    "frame_of",
+    "under_clear_sky",
+]
+
+Indices = NDArray[np.int64]
 
 YEAR = 2006  # calendar of a synthetic year: the middle of the leap cycle
-NAMES = (
+MONTHS = (
     "January", "February", "March", "April", "May", "June",
     "July", "August", "September", "October", "November", "December",
 )  # fmt: skip
 DARK = 0.05  # kWh/m2 a day outside the atmosphere, below which a month has no clearness to speak of
 LEAST_CLEARNESS = 0.06  # of a month's mean; the darkest day of the published curve has 0.05
-CLOCK = 4.0  # h between clock and longitude
+CLOCK = 4.0  # h at most between clock and longitude, as for weather files
+BOUNDS = {  # of a month's mean, by the key of a climate file: lowest, highest, unit
+    "ghi_kWh_m2": (0.0, 15.0, "kWh/m2"),
+    "air_C": (-70.0, 42.0, "C"),
+    "range_K": (0.5, 30.0, "K"),
+    "daily_K": (0.1, 12.0, "K"),
+    "humidity_percent": (5.0, 100.0, "%"),
+    "wind_m_s": (0.0, 15.0, "m/s"),
+}
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -46,7 +71,7 @@ CLEAN_SKY = Sky(aerosol=0.02, water_cm=0.5)  # what no hour of a synthetic year 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Climate:
-    """Twelve monthly means of a place, each ``(12,)``.
+    """Twelve monthly means of a place, each ``(12,)`` and within ``BOUNDS``.
 
     Parameters
     ----------
@@ -100,9 +125,9 @@ class Frame:
     """
 
     site: Site
-    time_mid: np.ndarray[tuple[int], np.dtype[np.datetime64]]
-    month: np.ndarray[tuple[int], np.dtype[np.int64]]
-    day: np.ndarray[tuple[int], np.dtype[np.int64]]
+    time_mid: NDArray[np.datetime64]
+    month: Indices
+    day: Indices
     sun: Sun
     cosine: Floats
     top: Floats
@@ -118,7 +143,7 @@ class Frame:
         return np.asarray(np.bincount(self.day, values, 365))
 
     @property
-    def month_of_day(self) -> np.ndarray[tuple[int], np.dtype[np.int64]]:
+    def month_of_day(self) -> Indices:
         """Month of each day, 0 to 11, ``(365,)``."""
         return self.month[12::24]
 
@@ -195,3 +220,54 @@ def under_clear_sky(sun: Sun, *, cosine: Floats, site: Site, sky: Sky) -> tuple[
     ghi = np.where(up, np.clip(found["ghi"], 0.0, sun.dni_extra * cosine), 0.0)
     dni = np.where(up, np.clip(found["dni"], 0.0, ghi / np.where(up, cosine, 1.0)), 0.0)
     return ghi, dni
+
+
+def climate_problems(climate: Climate, *, frame: Frame, where: Callable[[str], str]) -> list[Problem]:
+    """Faults of monthly means that no year can have.
+
+    Parameters
+    ----------
+    climate
+        Each number within ``BOUNDS``.
+    frame
+        The hours of its place.
+    where
+        Place of a key of the climate, for messages.
+
+    Returns
+    -------
+    list of Problem
+        Empty if all is well.
+    """
+    site, found = climate.site, []
+    if abs((site.longitude_deg / 15.0 - site.utc_offset_h + 12.0) % 24.0 - 12.0) > CLOCK:
+        found.append(
+            Problem(
+                where=where("utc_offset_h"),
+                what="place.utc_offset_h: clock and longitude do not belong together",
+                got=f"longitude {site.longitude_deg:g}, UTC offset {site.utc_offset_h:g} h",
+                allowed=f"an offset within {CLOCK:g} h of longitude/15",
+                do="east is positive in both",
+            )
+        )
+    top, limit = (24e-3 * frame.by_month(values) for values in (frame.top, frame.limit))
+    limits = zip(climate.ghi_kWh_m2.tolist(), top.tolist(), limit.tolist(), strict=True)
+    faults = [_out_of_reach(asked, outside, clear) for asked, outside, clear in limits]
+    do = "means of a day in kWh/m2; check month and hemisphere"
+    found += [
+        Problem(where=where("ghi_kWh_m2"), what=f"months.ghi_kWh_m2: {name} is {fault[0]}", do=do, **fault[1])
+        for name, fault in zip(MONTHS, faults, strict=True)
+        if fault is not None
+    ]
+    return found
+
+
+def _out_of_reach(asked: float, top: float, limit: float) -> tuple[str, dict[str, Any]] | None:
+    """What is the matter with a month's mean, and the limits."""
+    low = LEAST_CLEARNESS * top if top > DARK else 0.0
+    said = {"got": f"{asked:g} kWh/m2 a day", "allowed": f"{low:.2f} to {limit:.2f}, clear and dry all month"}
+    if asked > top:
+        return f"above what comes in outside the atmosphere there, {top:.2f}", said
+    if asked > limit:
+        return "above what comes through a clear sky there", said
+    return ("darker than any sky", said) if asked < low else None

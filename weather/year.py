@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["Floats", "Mask", "Site", "Stamp", "WeatherYear"]
+from weather.findings import Finding
+
+__all__ = ["Floats", "Gap", "Mask", "Site", "Stamp", "WeatherYear"]
 
 Floats = NDArray[np.float64]
 Mask = NDArray[np.bool_]
@@ -60,11 +62,19 @@ class Stamp:
     rmse_unshifted_w_m2: float | None
 
 
+class Gap(NamedTuple):
+    """Hours in a row that a column lacked and that were filled: which column, from when by the file's clock, how many."""
+
+    column: str
+    first: str
+    hours: int
+
+
 @dataclass(frozen=True, kw_only=True, eq=False)
 class WeatherYear:
-    """One year of hourly weather, complete and checked.
+    """One year of hourly weather, complete and checked; or several calendar years in their order.
 
-    Every array has shape ``(n,)``, n = 8760 or 8784, is read-only and free of NaN. A column that the file does not have,
+    Every array has shape ``(n,)``, n = 8760 or 8784 (a sum of those for several years), is read-only and free of NaN. A column that the file does not have,
     or has only in part, is None and never invented.
 
     Parameters
@@ -99,6 +109,14 @@ class WeatherYear:
         The calendar years that the rows come from.
     notices
         What was filled, clipped, missing or odd, a sentence each, with counts.
+    findings
+        What the checks of the file found, the gravest first.
+    gaps
+        What was missing and has been filled.
+    step_min
+        From row to row of the file [min].
+    made
+        Which columns of radiation were made from the others, and how; None if the file has all three.
     """
 
     site: Site
@@ -119,6 +137,10 @@ class WeatherYear:
     pressure: float
     source_years: tuple[int, ...]
     notices: tuple[str, ...]
+    findings: tuple[Finding, ...] = ()
+    gaps: tuple[Gap, ...] = ()
+    step_min: float = 60.0
+    made: str | None = None
 
     def __post_init__(self) -> None:
         for value in vars(self).values():
@@ -126,6 +148,11 @@ class WeatherYear:
 
     def __len__(self) -> int:
         return len(self.ghi)
+
+    @property
+    def years(self) -> int:
+        """How many whole years the axis holds."""
+        return round(len(self) / 8766.0)
 
 
 def _freeze(value: Any) -> None:

@@ -331,6 +331,8 @@ def _words_of_size(error: Any, allowed: str) -> tuple[str, str, str, str] | None
     kind, value = error["type"], error["input"]
     if kind == "too_long":
         return "too many entries", str(len(value)), f"at most {error['ctx']['max_length']}", ""
+    if kind == "too_short" and value:
+        return "too few entries", str(len(value)), allowed, ""
     if kind == "string_too_long":
         return "too long", f"{len(value)} characters", f"at most {error['ctx']['max_length']} characters", ""
     if kind in {"too_short", "string_too_short"}:
