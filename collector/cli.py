@@ -56,6 +56,12 @@ _set: Decorator = click.option(
     help="Override a scenario key, such as fluid.flow_kg_s_m2=0.01.",
 )
 _scenario: Decorator = click.argument("scenario", type=click.Path(path_type=Path))
+_accept: Decorator = click.option(
+    "--accept",
+    multiple=True,
+    metavar="NAME",
+    help="Live with a grave finding about the weather file; as place.accept in the scenario.",
+)
 
 
 def _emit(content: dict[str, Any], *, text: Callable[[], str], as_json: bool) -> None:
@@ -67,6 +73,7 @@ def _emit(content: dict[str, Any], *, text: Callable[[], str], as_json: bool) ->
 @main.command()
 @click.argument("scenarios", metavar="SCENARIO...", nargs=-1, required=True, type=click.Path(path_type=Path))
 @_set
+@_accept
 @click.option(
     "--out",
     type=click.Path(path_type=Path, file_okay=True),
@@ -74,7 +81,9 @@ def _emit(content: dict[str, Any], *, text: Callable[[], str], as_json: bool) ->
     help="Also write summary.json, months.csv, hours.csv and two figures a run.",
 )
 @_json
-def year(scenarios: tuple[Path, ...], overrides: tuple[str, ...], out: Path | None, as_json: bool) -> None:
+def year(
+    scenarios: tuple[Path, ...], overrides: tuple[str, ...], accept: tuple[str, ...], out: Path | None, as_json: bool
+) -> None:
     """The year of heat: totals, months, where the sunlight went.
 
     Several scenarios, or several temperatures in one, give a comparison.
@@ -84,7 +93,7 @@ def year(scenarios: tuple[Path, ...], overrides: tuple[str, ...], out: Path | No
     from collector.show.tables import comparison_text, year_text
     from collector.study.account import runs_of
 
-    checked = [(read_scenario(path, overrides=overrides), path.parent) for path in scenarios]
+    checked = [(read_scenario(path, overrides=overrides).accepting(accept), path.parent) for path in scenarios]
     if out is not None:
         open_folder(out)
     runs = [run for scenario, base in checked for run in runs_of(scenario, base=base)]
@@ -429,15 +438,43 @@ def new(file: Path, as_json: bool) -> None:
 @main.command()
 @_scenario
 @_set
+@_accept
 @_json
-def check(scenario: Path, overrides: tuple[str, ...], as_json: bool) -> None:
+def check(scenario: Path, overrides: tuple[str, ...], accept: tuple[str, ...], as_json: bool) -> None:
     """Check a scenario and its weather file without solving the year."""
     from collector.build.reading import read_scenario
     from collector.show.tables import check_text
     from collector.study.account import inspected
 
-    found = inspected(read_scenario(scenario, overrides=overrides), base=scenario.parent)
+    found = inspected(read_scenario(scenario, overrides=overrides).accepting(accept), base=scenario.parent)
     _emit(found, text=lambda: check_text(found), as_json=as_json)
+
+
+@main.command()
+@click.argument("name", metavar="FILE|STATION")
+@click.option("--out", type=click.Path(path_type=Path), metavar="DIR", help="Also write weather.json and the figure.")
+@_json
+def weather(name: str, out: Path | None, as_json: bool) -> None:
+    """What is in a weather file, and what is wrong with it.
+
+    Place, format, gaps, time stamps, findings and sums of a weather file or a bundled station. The name of a scenario in TOML
+    stands for the weather that it names, with the columns it maps.
+    """
+    from collector.show.weather_page import weather_text
+    from collector.study.weather import survey_of
+
+    found = survey_of(name, base=Path())
+    if out is not None:
+        from collector.show.files import json_text, open_folder, write_whole
+        from collector.show.plots import save_figure
+        from collector.show.weather_plots import draw_weather
+
+        open_folder(out)
+        text, figure = json_text(found.account), draw_weather(found.account, found.curves)
+        write_whole(out / "weather.json", write=lambda path: path.write_text(text, encoding="utf-8"))
+        write_whole(out / "weather.png", write=lambda path: save_figure(figure, path=path))
+        click.echo(f"written to {out}: weather.json, weather.png", err=True)
+    _emit(found.account, text=lambda: weather_text(found.account), as_json=as_json)
 
 
 @main.command()

@@ -424,3 +424,20 @@ COMMAND_FAULTS = {
 def test_surface_refused(name):
     arguments, messages = COMMAND_FAULTS[name]
     assert refused("surface", *arguments) == messages
+
+
+def test_a_spectrum_that_stops_in_the_near_infrared_tells_no_emittance(tmp_path):
+    """Sunlight is all there; of what a plate at 100 C radiates nothing is: no number may look like one."""
+    rows = "\n".join(f"{nm},{5 if nm < 2000 else 8}" for nm in range(300, 2501, 50))
+    path = tmp_path / "short.csv"
+    path.write_text(f"wavelength_nm,reflectance_percent\n{rows}\n", encoding="utf-8")
+    result = CliRunner().invoke(main, ["surface", str(path), "--json", "--out", str(tmp_path / "out")])
+    assert result.exit_code == 0, result.stderr
+    found = json.loads(result.stdout)
+    assert found["absorptance"]["global"]["value"] == pytest.approx(0.95, abs=0.005)
+    assert all(row["normal"] is None for row in found["emittance"])
+    assert any("no emittance is told at 17 of the table's 17 temperatures" in said for said in found["notices"])
+    year = ["year", str(LAUNDRY), "--set", f"collector.absorber.reflectance_csv={path}"]
+    refused = CliRunner().invoke(main, year)
+    assert refused.exit_code == 2
+    assert "the spectrum tells no emittance, most of the heat at 100 C is outside its range; got 0.3 to 2.5 um" in refused.stderr

@@ -2,16 +2,18 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
 import pandas as pd
 
 from weather.errors import InputError, Problem
+from weather.formats.raw import Raw
 from weather.formats.tmy3 import LEAP_YEAR, PLAIN_YEAR
 from weather.year import Floats
 
-__all__ = ["axis_of", "on_axis", "runs"]
+__all__ = ["axis_of", "on_axis", "one_year", "runs"]
 
 Places = np.ndarray[Any, np.dtype[np.intp]]
 LONGEST_PLAIN = 8784 + 87  # rows of one year, with what may be too many before it is told as such
@@ -61,9 +63,38 @@ def axis_of(index: pd.DatetimeIndex, *, at_end: bool, file: str) -> tuple[pd.Dat
     return labels, place, _faults(place, labels=labels, file=file, index=index, several=several)
 
 
-def _faults(
-    place: Places, *, labels: pd.DatetimeIndex, file: str, index: pd.DatetimeIndex, several: bool
-) -> list[str]:
+def one_year(raw: Raw, *, year: int, file: str) -> Raw:
+    """The rows of one calendar year.
+
+    Parameters
+    ----------
+    raw
+        As read.
+    year
+        Which, by the file's own clock.
+    file
+        For messages.
+
+    Returns
+    -------
+    Raw
+        As read, with those rows alone.
+
+    Raises
+    ------
+    InputError
+        The file has no such year.
+    """
+    of_row = (raw.index - pd.Timedelta(minutes=raw.step_min if raw.stamp == "end" else 0.0)).year
+    kept = np.asarray(of_row == year)
+    if not kept.any():
+        allowed = ", ".join(str(each) for each in sorted(set(of_row)))
+        raise InputError(Problem(where=file, what="no such calendar year in the file", got=str(year), allowed=allowed))
+    columns = {name: values[kept] for name, values in raw.columns.items()}
+    return replace(raw, index=raw.index[kept], columns=columns, years=(year,))
+
+
+def _faults(place: Places, *, labels: pd.DatetimeIndex, file: str, index: pd.DatetimeIndex, several: bool) -> list[str]:
     """Refuse what is not one row an hour of whole years; count what is out of order or missing."""
     unique, counts = np.unique(place, return_counts=True)
     size = len(labels)

@@ -36,7 +36,7 @@ MONTHS = (
     "January", "February", "March", "April", "May", "June",
     "July", "August", "September", "October", "November", "December",
 )  # fmt: skip
-DARK = 0.05  # kWh/m2 a day outside the atmosphere, below which a month has no clearness to speak of
+DARK = 0.05  # kWh/m2 a day, up to which hours at their middle do not tell a polar night's edge: met as far as it goes
 LEAST_CLEARNESS = 0.06  # of a month's mean; the darkest day of the published curve has 0.05
 CLOCK = 4.0  # h at most between clock and longitude, as for weather files
 BOUNDS = {  # of a month's mean, by the key of a climate file: lowest, highest, unit
@@ -264,7 +264,9 @@ def climate_problems(climate: Climate, *, frame: Frame, where: Callable[[str], s
 
 def _out_of_reach(asked: float, top: float, limit: float) -> tuple[str, dict[str, Any]] | None:
     """What is the matter with a month's mean, and the limits."""
-    low = LEAST_CLEARNESS * top if top > DARK else 0.0
+    if max(asked, top) <= DARK:
+        return None
+    low = LEAST_CLEARNESS * top
     said = {"got": f"{asked:g} kWh/m2 a day", "allowed": f"{low:.2f} to {limit:.2f}, clear and dry all month"}
     if asked > top:
         return f"above what comes in outside the atmosphere there, {top:.2f}", said

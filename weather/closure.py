@@ -16,6 +16,7 @@ __all__ = ["RADIATION", "closure_of", "suspicions"]
 RADIATION = ("ghi", "dni", "dhi")
 SUSPECT = 25.0  # W/m2 of closure error at the best time of day, from which another reading of the file is tried
 BETTER = 0.4  # of that error, at which another reading is believed
+SWAP = "swap them in the file, or under [place.columns]"
 BEAM = 50.0  # W/m2, from which an hour counts
 WIDE = np.arange(-300.0, 301.0, 30.0)  # min of the clock
 
@@ -86,9 +87,13 @@ def suspicions(sun: Sun, *, latitude_deg: float, columns: Mapping[str, Floats], 
         return []
     found = []
     if order != RADIATION:
-        words = ", ".join(f"what stands as {o.upper()} is {n.upper()}" for n, o in zip(RADIATION, order, strict=True) if n != o)
-        what = f"columns of radiation are in another order: {words} (closure error {least:.0f} instead of {best:.0f} W/m2)"
-        found.append(Finding(name="swapped-columns", severity="stop", what=what, hours=hours, do="swap them in the file or mapping"))
+        words = ", ".join(
+            f"what stands as {o.upper()} is {n.upper()}" for n, o in zip(RADIATION, order, strict=True) if n != o
+        )
+        what = (
+            f"columns of radiation are in another order: {words} (closure error {least:.0f} instead of {best:.0f} W/m2)"
+        )
+        found.append(Finding(name="swapped-columns", severity="stop", what=what, hours=hours, do=SWAP))
     if sign < 0.0:
         what = (
             f"the sun's year is that of the other hemisphere: latitude {-latitude_deg:g} fits instead of {latitude_deg:g} "

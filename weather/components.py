@@ -30,7 +30,6 @@ MEASURED = {  # what the bundled years' own DNI says of each: rms of the hour [W
 LOWEST_SUN = 0.065  # cosine of the zenith angle, below which a division by it tells nothing
 
 
-
 def completed(
     columns: Mapping[str, Floats], *, sun: Sun, time: Instants, model: str, file: str
 ) -> tuple[dict[str, Floats], str | None, list[str]]:
@@ -71,7 +70,7 @@ def completed(
         return _decomposed(known["ghi"], sun=sun, time=time, model=model)
     if len(known) == 2:
         made, way = _by_closure(known, cosine=cosine, sun=sun)
-        said = f"the file has no {made.upper()}: made by closure, {way}, at the format's time of day; nothing is left to check it by"
+        said = f"the file has no {made.upper()}: made by closure, {way}, at the format's time of day; nothing is left to check it"
         return known, f"{made} by closure", [said]
     got = " and ".join(name.upper() for name in known) or "none of them"
     allowed = "GHI alone, or two of GHI, DNI and DHI, or all three"
@@ -93,9 +92,7 @@ def _by_closure(known: dict[str, Floats], *, cosine: Floats, sun: Sun) -> tuple[
     return "dni", f"DNI = (GHI - DHI)/cos z where the sun is {np.degrees(np.arcsin(LOWEST_SUN)):.1f} deg high, else 0"
 
 
-def _decomposed(
-    ghi: Floats, *, sun: Sun, time: Instants, model: str
-) -> tuple[dict[str, Floats], str, list[str]]:
+def _decomposed(ghi: Floats, *, sun: Sun, time: Instants, model: str) -> tuple[dict[str, Floats], str, list[str]]:
     known, whole = np.isfinite(ghi), np.maximum(np.nan_to_num(ghi), 0.0)
     dni = _direct(whole, sun=sun, day=pd.DatetimeIndex(time).day_of_year.to_numpy(), model=model)
     cosine = np.maximum(np.cos(np.radians(sun.apparent_zenith_deg)), 0.0)

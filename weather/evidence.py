@@ -13,7 +13,39 @@ from weather.findings import Finding, Severity
 from weather.sun import Sun
 from weather.year import Floats, Mask, Site
 
-__all__ = ["Evidence"]
+__all__ = ["Evidence", "clear_sky"]
+
+
+def clear_sky(sun: Sun, *, site: Site) -> Floats:
+    """GHI of a clean, dry sky without cloud: an envelope that hardly an hour exceeds.
+
+    Parameters
+    ----------
+    sun
+        n hours.
+    site
+        Whose altitude counts.
+
+    Returns
+    -------
+    ndarray
+        ``(n,)`` [W/m2].
+
+    Notes
+    -----
+    **Source**: Ineichen, Solar Energy 82 (2008) 758, through pvlib, with an optical depth of 0.02 and 0.5 cm of water.
+    """
+    from pvlib.atmosphere import alt2pres
+    from pvlib.clearsky import simplified_solis
+
+    found = simplified_solis(
+        90.0 - sun.apparent_zenith_deg,
+        aod700=0.02,
+        precipitable_water=0.5,
+        pressure=float(alt2pres(site.altitude_m)),
+        dni_extra=sun.dni_extra,
+    )
+    return np.nan_to_num(np.asarray(found["ghi"], dtype=float))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -47,23 +79,8 @@ class Evidence:
 
     @cached_property
     def clear(self) -> Floats:
-        """GHI of a clean, dry sky without cloud [W/m2]: an envelope that hardly an hour exceeds.
-
-        Notes
-        -----
-        **Source**: Ineichen, Solar Energy 82 (2008) 758, through pvlib, with an optical depth of 0.02 and 0.5 cm of water.
-        """
-        from pvlib.atmosphere import alt2pres
-        from pvlib.clearsky import simplified_solis
-
-        found = simplified_solis(
-            90.0 - self.sun.apparent_zenith_deg,
-            aod700=0.02,
-            precipitable_water=0.5,
-            pressure=float(alt2pres(self.site.altitude_m)),
-            dni_extra=self.sun.dni_extra,
-        )
-        return np.nan_to_num(np.asarray(found["ghi"], dtype=float))
+        """GHI of a clean, clear sky [W/m2]."""
+        return clear_sky(self.sun, site=self.site)
 
     def read(self, name: str) -> Floats | None:
         """Return a column as the file has it; None if it has none or if it was made from others."""

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import codecs
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -12,7 +13,7 @@ import numpy as np
 import pandas as pd
 from pvlib.atmosphere import alt2pres
 
-from weather.axis import axis_of, on_axis, runs
+from weather.axis import axis_of, on_axis, one_year, runs
 from weather.checks import clean_column, find_stamp, site_problems
 from weather.closure import RADIATION, suspicions
 from weather.components import completed
@@ -41,6 +42,7 @@ def read(
     place: Mapping[str, float] | None = None,
     columns: Columns | None = None,
     decomposition: str = "erbs",
+    year: int | None = None,
 ) -> WeatherYear:
     """Read a weather file of the user's.
 
@@ -54,6 +56,8 @@ def read(
         Names and units of the columns, of a table in no known format.
     decomposition
         A key of ``weather.components.DECOMPOSITIONS``, for a file with GHI alone.
+    year
+        Which calendar year to take, of a file with several.
 
     Returns
     -------
@@ -66,11 +70,10 @@ def read(
         The file can't be read, is not a year, or lacks what a year needs.
     """
     text = _text(path)
-    known = recognise(text, file=str(path)) if columns is None else None
-    name = known.name if known else "the table that [place.columns] describes"
+    name, reader = _reader(text, columns=columns, file=str(path))
     try:
-        raw = known.read(text, path) if known else read_table_of(text, path, columns=columns)
-        raw = hourly(raw, file=str(path))
+        raw = reader(text, path)
+        raw = hourly(raw if year is None else one_year(raw, year=year, file=str(path)), file=str(path))
     except InputError:
         raise
     except Exception as fault:  # noqa: BLE001 # whatever a reader trips over, the user gets a message and never a traceback
@@ -84,6 +87,14 @@ def read(
     if faults := site_problems(raw.site, file=str(path)):
         raise InputError(faults)
     return _checked(raw, file=str(path), said=said if place else [], decomposition=decomposition)
+
+
+def _reader(text: str, *, columns: Columns | None, file: str) -> tuple[str, Callable[[str, Path], Raw]]:
+    """Name and reader of the format that the content shows, or of the table that is described."""
+    if columns is not None:
+        return "the table that [place.columns] describes", partial(read_table_of, columns=columns)
+    known = recognise(text, file=file)
+    return known.name, known.read
 
 
 def _stands_in(key: str, *, own: float) -> str:

@@ -63,7 +63,10 @@ class Finding:
         where = f"{file}, {self.first}" if self.first else file
         ways = [self.do, f"or take it as it is with --accept {self.name}" if accept else ""]
         return Problem(
-            where=where, what=f"{self.name}: {self.what}", got=f"{self.hours} h", do=", ".join(way for way in ways if way)
+            where=where,
+            what=f"{self.name}: {self.what}",
+            got=f"{self.hours} h",
+            do=", ".join(way for way in ways if way),
         )
 
 

@@ -36,7 +36,7 @@ def step_of(index: pd.DatetimeIndex, *, file: str) -> float:
     InputError
         The rows are farther apart, or do not fill an hour.
     """
-    apart = np.diff(index.to_numpy().astype("datetime64[s]").astype(np.int64)) / 60.0
+    apart = np.diff(np.asarray(index.to_numpy().astype("datetime64[s]").astype(np.int64))) / 60.0
     forward = apart[apart > 0.0]
     if not forward.size:
         got = "no two rows that follow each other in time"
@@ -46,7 +46,9 @@ def step_of(index: pd.DatetimeIndex, *, file: str) -> float:
     if not 1.0 <= step <= 60.0 or 60.0 % step:
         do = "average or interpolate the table to hours first"
         allowed = "1 to 60 min, a whole number of steps to the hour"
-        raise InputError(Problem(where=file, what="rows at an unusable step", got=f"{step:g} min", allowed=allowed, do=do))
+        raise InputError(
+            Problem(where=file, what="rows at an unusable step", got=f"{step:g} min", allowed=allowed, do=do)
+        )
     return step
 
 
@@ -86,7 +88,8 @@ def hourly(raw: Raw, *, file: str) -> Raw:
     hour = start.floor("h")
     step = ((start - hour) / pd.Timedelta(minutes=raw.step_min)).to_numpy().astype(int)
     labels, row = np.unique(hour.to_numpy(), return_inverse=True)
-    columns, filled = {}, 0
+    columns: dict[str, Floats] = {}
+    filled = 0
     for name, values in raw.columns.items():
         grid = np.full((len(labels), per_hour), np.nan)
         grid[row, step] = values[order]
@@ -94,7 +97,9 @@ def hourly(raw: Raw, *, file: str) -> Raw:
         filled = max(filled, count)
     within = float(((start - hour) / pd.Timedelta(minutes=1)).to_numpy().min())  # of the hour's first step
     middle = within + 30.0 + (0.0 if raw.stamp != "middle" else -0.5 * raw.step_min) + _beyond_ends(raw)
-    said = [f"steps of {raw.step_min:g} min averaged to hours: each hour is the mean of its {per_hour} steps, energy is kept"]
+    said = [
+        f"steps of {raw.step_min:g} min averaged to hours: each hour is the mean of its {per_hour} steps, energy is kept"
+    ]
     if filled:
         said.append(f"{filled} steps of {raw.step_min:g} min missing within their hours, filled in a straight line")
     return replace(
@@ -121,9 +126,7 @@ def _means(grid: Floats) -> tuple[Floats, int]:
     open_steps = ~known & enough[:, np.newaxis]
     if open_steps.any():
         flat, places = grid.ravel().copy(), np.arange(grid.size)
-        flat[open_steps.ravel()] = np.interp(
-            places[open_steps.ravel()], places[known.ravel()], flat[known.ravel()]
-        )
+        flat[open_steps.ravel()] = np.interp(places[open_steps.ravel()], places[known.ravel()], flat[known.ravel()])
         grid = flat.reshape(grid.shape)
     means = np.full(len(grid), np.nan)
     means[enough] = grid[enough].mean(axis=1)

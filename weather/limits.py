@@ -9,8 +9,13 @@ from weather.year import Floats, Mask
 
 __all__ = ["POSSIBLE", "RARE", "beyond", "beyond_longwave", "disagreeing"]
 
-Limit = tuple[float, float, float, float]  # lowest [W/m2]; factor on the extraterrestrial; power of cos z; constant [W/m2]
-POSSIBLE: dict[str, Limit] = {"ghi": (-4.0, 1.5, 1.2, 100.0), "dhi": (-4.0, 0.95, 1.2, 50.0), "dni": (-4.0, 1.0, 0.0, 0.0)}
+# lowest [W/m2]; factor on the extraterrestrial; power of cos z; constant [W/m2]
+Limit = tuple[float, float, float, float]
+POSSIBLE: dict[str, Limit] = {
+    "ghi": (-4.0, 1.5, 1.2, 100.0),
+    "dhi": (-4.0, 0.95, 1.2, 50.0),
+    "dni": (-4.0, 1.0, 0.0, 0.0),
+}
 RARE: dict[str, Limit] = {"ghi": (-2.0, 1.2, 1.2, 50.0), "dhi": (-2.0, 0.75, 1.2, 30.0), "dni": (-2.0, 0.95, 0.2, 10.0)}
 LONGWAVE = {"possible": (40.0, 700.0), "rare": (60.0, 500.0)}  # W/m2
 DIM = 50.0  # W/m2 of DHI + DNI cos z, below which the components are not compared

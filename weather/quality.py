@@ -68,6 +68,11 @@ def _clock(e: Evidence, stamp: Stamp) -> Iterator[Finding]:
         yield from e.finding("closure", lit, severity="stop", what=what, do=do)
 
 
+def _count(mask: Floats | Mask) -> float:
+    """Return how many hours are not zero; hardly more than none where there are none, so that it divides."""
+    return float(np.count_nonzero(mask)) or 1e-9
+
+
 def impossible(e: Evidence) -> Iterator[Finding]:
     """Irradiance and long wave beyond the physically possible."""
     masks = {}
@@ -98,7 +103,7 @@ def _limits(e: Evidence, masks: dict[str, Mask], *, name: str, words: str) -> li
     for mask in masks.values():
         whole |= mask
     each = ", ".join(f"{key.upper()} {np.count_nonzero(mask)} h" for key, mask in masks.items() if mask.any())
-    many = np.count_nonzero(whole) > MANY * max(np.count_nonzero(e.cosine), 1)
+    many = np.count_nonzero(whole) > MANY * _count(e.cosine)
     if name == "rare":
         return e.finding(name, whole, severity="warn" if many else "note", what=f"{each} {words}")
     do = "look at those hours; check columns, units and clock"
@@ -112,7 +117,7 @@ def components(e: Evidence) -> Iterator[Finding]:
         return
     ghi, dni, dhi = (np.asarray(values) for values in read)
     off, told = disagreeing(ghi=ghi, dni=dni, dhi=dhi, zenith_deg=e.sun.apparent_zenith_deg)
-    share = np.count_nonzero(off) / max(np.count_nonzero(told), 1)
+    share = _count(off) / _count(told)
     what = f"GHI and DHI + DNI cos z disagree by more than 8 % (15 % with a low sun) in {100 * share:.1f} % of the hours compared"
     yield from e.finding("components", off, severity="warn" if share > OFTEN else "note", what=what)
 
@@ -124,7 +129,7 @@ def above_clear(e: Evidence) -> Iterator[Finding]:
         return
     high = e.cosine > 0.2
     mask = high & (ghi > 1.1 * e.clear + 20.0)
-    share = np.count_nonzero(mask) / max(np.count_nonzero(high), 1)
+    share = _count(mask) / _count(high)
     what = f"GHI more than 10 % above a clean, clear sky in {100 * share:.1f} % of the hours with the sun above 12 deg"
     yield from e.finding("above-clear-sky", mask, severity="warn" if share > 0.05 else "note", what=what)
 
@@ -160,7 +165,11 @@ def stuck(e: Evidence) -> Iterator[Finding]:
             mask = _same(values, longest=STUCK[name])
             what = f"{words} keeps one value for more than {STUCK[name]} h"
             yield from e.finding(
-                f"stuck-{name.partition('_')[2] or name}", mask, severity="warn", what=what, do="a stuck sensor or filled rows"
+                f"stuck-{name.partition('_')[2] or name}",
+                mask,
+                severity="warn",
+                what=what,
+                do="a stuck sensor or filled rows",
             )
 
 

@@ -87,7 +87,7 @@ def synthesise(climate: Climate, *, seed: int, clear_sky: bool = False, where: s
         dni=dni,
         t_air=t_air,
         wind=hourly_wind(frame, means=climate.wind, noise=rng.standard_normal(8760)),
-        t_dew=dew_point(frame, t_air=t_air, humidity=climate.humidity),
+        humidity=climate.humidity,
         cloud=np.zeros(8760) if clear_sky else cloud_cover(frame, ghi=ghi, clear=bare),
     )
 
@@ -157,8 +157,18 @@ def _filled(climate: Climate, *, frame: Frame) -> Climate:
 
 
 def _year(
-    frame: Frame, *, where: str, said: tuple[str, ...], ghi: Floats, dni: Floats, **columns: Floats
+    frame: Frame,
+    *,
+    where: str,
+    said: tuple[str, ...],
+    ghi: Floats,
+    dni: Floats,
+    t_air: Floats,
+    wind: Floats,
+    humidity: Floats | None,
+    cloud: Floats,
 ) -> WeatherYear:
+    """Columns put together: diffuse light by closure, dew point by humidity."""
     return WeatherYear(
         site=frame.site,
         file=where,
@@ -169,10 +179,13 @@ def _year(
         ghi=ghi,
         dni=dni,
         dhi=np.maximum(ghi - dni * frame.cosine, 0.0),
+        t_air=t_air,
+        wind=wind,
+        t_dew=dew_point(frame, t_air=t_air, humidity=humidity),
+        cloud=cloud,
         longwave=None,
         albedo=None,
         pressure=float(alt2pres(frame.site.altitude_m)),
         source_years=(YEAR,),
         notices=said,
-        **columns,
     )

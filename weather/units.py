@@ -62,7 +62,7 @@ def _wind(e: Evidence) -> Iterator[Finding]:
     wind = e.read("wind")
     if wind is None:
         return
-    mean, highest = float(np.nanmean(wind)), float(np.nanquantile(wind, 0.9995))
+    mean, highest = float(np.nanmean(wind)), float(np.nanquantile(wind, 0.998))
     if mean > WINDIEST or highest > WILDEST or (mean > 8.0 and highest > 35.0):
         what = (
             f"wind has a mean of {mean:.1f} m/s and goes to {np.nanmax(wind):.0f} m/s: the column is in km/h or mph "

@@ -74,8 +74,8 @@ class Gap(NamedTuple):
 class WeatherYear:
     """One year of hourly weather, complete and checked; or several calendar years in their order.
 
-    Every array has shape ``(n,)``, n = 8760 or 8784 (a sum of those for several years), is read-only and free of NaN. A column that the file does not have,
-    or has only in part, is None and never invented.
+    Every array has shape ``(n,)``, n = 8760 or 8784 (a sum of those for several years), is read-only and free of NaN. A column
+    that the file does not have, or has only in part, is None and never invented.
 
     Parameters
     ----------

@@ -6,7 +6,7 @@ import os.path
 from pathlib import Path
 
 from collector.build.scenario import AbsorberTable, Scenario
-from collector.build.surfaces import Surface, read_surface
+from collector.build.surfaces import Surface, read_surface, refuse_untold
 from collector.build.table import Where
 from weather.errors import InputError, Problem
 
@@ -65,4 +65,5 @@ def _surface(absorber: AbsorberTable, *, where: Where, base: Path) -> Surface:
     ]
     if faults:
         raise InputError(faults)
-    return read_surface([base / name for name in names], metal=absorber.hemispherical == "metal")
+    surface = read_surface([base / name for name in names], metal=absorber.hemispherical == "metal")
+    return refuse_untold(surface, where=place)

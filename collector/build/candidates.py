@@ -10,7 +10,7 @@ from pathlib import Path
 
 from collector.build.catalogue import entry, shelf
 from collector.build.collector import values_of
-from collector.build.surfaces import read_surface
+from collector.build.surfaces import read_surface, refuse_untold
 from collector.physics.emittance_curve import EmittanceCurve
 from weather.errors import InputError, Problem
 
@@ -155,7 +155,7 @@ def _pair(given: str, absorptance: float, emittance: float) -> Candidate:
 def _from_files(given: str, *, metal: bool) -> Candidate:
     paths = [Path(given)] if Path(given).is_file() else [Path(part.strip()) for part in given.split(",")]
     stack = any(path.suffix.lower() == ".toml" for path in paths)
-    surface = read_surface(paths, metal=metal and not stack)
+    surface = refuse_untold(read_surface(paths, metal=metal and not stack), where="--coating")
     values = values_of(surface)
     return Candidate(
         name=surface.name,

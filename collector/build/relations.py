@@ -27,6 +27,16 @@ FIXED = {
     "mixtures in films": "Maxwell Garnett 1904, Phil. Trans. A 203, 385; Bruggeman 1935, Ann. Phys. 416, 636",
     "coatings, intervals": "normal draws on a polynomial through solved years; Box & Wilson 1951, J. R. Stat. Soc. B 13, 1",
     "coatings, ageing": "PC = -d_alpha + w d_eps, ISO 22975-3:2014 (weight from memory); Arrhenius 1889, Z. Phys. Chem. 4, 226",
+    "synthetic days": "Bendt, Collares-Pereira & Rabl 1981, Solar Energy 27, 1; Hollands & Huget 1983, Solar Energy 30, 195; "
+    "one day from each equal part: Knight, Klein & Duffie 1991, Solar Energy 46, 109",
+    "synthetic order": "sunshine, maximum and minimum temperature: Richardson 1981, Water Resour. Res. 17, 182 (from memory)",
+    "synthetic hours": "trend and scatter: Graham & Hollands 1990, Solar Energy 44, 333 (from memory)",
+    "synthetic diffuse": "Erbs, Klein & Duffie 1982, Solar Energy 28, 293, through pvlib; beam by closure",
+    "synthetic limit": "clear sky: Ineichen 2008, Solar Energy 82, 758, through pvlib",
+    "synthetic air": "half cosines: de Wit, Goudriaan & van Laar 1978; range and scatter where not given: Erbs, Klein & Beckman "
+    "1983, ASHRAE J. 25(6), 60 (from memory); dew point where not given: Running et al. 1987, Can. J. For. Res. 17, 472",
+    "synthetic wind": "Weibull of shape 2, autoregressive; common practice, no source",
+    "synthetic cloud": "Kasten & Czeplak 1980, Solar Energy 24, 177, solved for the cover",
     "coatings, worth": "present value, (1 - (1 + d)^-n) / d; levelised cost of heat, Louvet et al. 2019, Solar Energy 193, 85",
 }
 

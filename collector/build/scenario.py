@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Iterable
 from itertools import pairwise
 from typing import Annotated, Literal
 
@@ -12,9 +13,11 @@ from scipy.constants import zero_Celsius
 from collector.build.catalogue import shelf
 from collector.build.surfaces import Surface
 from collector.build.table import Table, fault, quantity
+from collector.build.weather_table import ColumnsTable
 from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import freezing_point
 from collector.physics.glazing import slab_from_normal
+from weather.components import DECOMPOSITIONS
 from weather.plane import MODELS as TILTED_SKY_MODELS
 from weather.sky import MODELS as SKY_MODELS
 
@@ -36,6 +39,7 @@ CHOICES = {  # every step with a choice: its accepted names, each with its sourc
         "integrated": "covers and plate integrated over the sky's and the ground's part of the hemisphere",
         "effective-angle": "beam optics at one angle each; Brandemuehl & Beckman 1980, Solar Energy 24, 511",
     },
+    "decomposition": DECOMPOSITIONS,
 }
 RIVALS: dict[str, tuple[tuple[str, ...], ...]] = {  # sets of keys of a table of which exactly one set is to be given
     "operation": (("inlet_C",), ("mean_C",)),
@@ -75,6 +79,9 @@ class PlaceTable(Table):
     longitude: float | None = quantity(-180.0, 180.0, "deg", doc="east positive", default=None)
     altitude_m: float | None = quantity(-450.0, 9000.0, "m", doc="above sea level", default=None)
     utc_offset_h: float | None = quantity(-12.0, 14.0, "h", doc="local standard time minus UTC", default=None)
+    year: int | None = quantity(1800, 2200, "", doc="which calendar year, of a file with several", default=None)
+    columns: ColumnsTable | None = Field(None, description="columns and units of a table in CSV in no known format")
+    accept: list[str] = Field(default_factory=list, description="grave findings about the weather file to live with")
 
 
 class MountingTable(Table):
@@ -396,6 +403,9 @@ class ModelsTable(Table):
     diffuse: Literal["integrated", "effective-angle"] = Field(
         default="integrated", description="optics of diffuse light"
     )
+    decomposition: Literal["erbs", "disc", "boland"] = Field(
+        default="erbs", description="direct and diffuse, where the weather file has global irradiance alone"
+    )
 
 
 class Scenario(Table):
@@ -408,6 +418,11 @@ class Scenario(Table):
     fluid: FluidTable
     operation: OperationTable
     models: ModelsTable = ModelsTable()
+
+    def accepting(self, names: Iterable[str]) -> Scenario:
+        """Return the same, living with further grave findings about the weather file."""
+        place = self.place.model_copy(update={"accept": [*self.place.accept, *names]})
+        return self.model_copy(update={"place": place})
 
     @model_validator(mode="after")
     def _check(self) -> Scenario:

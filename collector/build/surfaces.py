@@ -18,10 +18,20 @@ from collector.physics.spectrum import Spectrum, emittance, solar_absorptance
 from weather.errors import InputError, Problem
 from weather.year import Floats
 
-__all__ = ["BEYOND", "REFERENCE", "Surface", "corrected_by_metal", "read_surface", "reference_sun"]
+__all__ = [
+    "BEYOND",
+    "REFERENCE",
+    "TOLD",
+    "Surface",
+    "corrected_by_metal",
+    "read_surface",
+    "reference_sun",
+    "refuse_untold",
+]
 
 REFERENCE = 100.0 + zero_Celsius  # K, at which one number stands for an emittance over temperature
 BEYOND = 0.05  # share of a black body's power at 100 C outside the measured range from which on it is said
+TOLD = 0.5  # the same share, from which on no emittance is told
 LEAST = 0.003  # emittance; a metal cleaner than any is measured smaller by noise alone
 
 
@@ -45,6 +55,8 @@ class Surface:
         Emittance over the plate's temperature.
     notices
         What the readers found and did.
+    outside
+        Share of a black body's power at 100 C outside the spectrum's range.
     """
 
     name: str
@@ -54,6 +66,7 @@ class Surface:
     absorptance: float
     radiating: EmittanceCurve
     notices: tuple[str, ...]
+    outside: float = 0.0
 
     @property
     def emitting(self) -> Spectrum:
@@ -157,7 +170,37 @@ def _surface(
         absorptance=absorbed.value,
         radiating=emittance_function(heat, corrected=corrected),
         notices=tuple(said),
+        outside=outside,
     )
+
+
+def refuse_untold(surface: Surface, *, where: str) -> Surface:
+    """Let through a surface whose spectrum tells its emittance.
+
+    Parameters
+    ----------
+    surface
+        Read.
+    where
+        For the message.
+
+    Returns
+    -------
+    Surface
+        The same.
+
+    Raises
+    ------
+    InputError
+        Most of the heat that a plate radiates lies outside the spectrum's range.
+    """
+    if surface.outside <= TOLD:
+        return surface
+    wavelength = surface.normal.wavelength
+    what = f"{surface.name}: the spectrum tells no emittance, most of the heat at 100 C is outside its range"
+    got = f"{wavelength[0] * 1e6:.3g} to {wavelength[-1] * 1e6:.3g} um, {100 * surface.outside:.0f} % outside"
+    do = "measure further into the infrared, or give absorptance and emittance as a pair"
+    raise InputError(Problem(where=where, what=what, got=got, allowed=f"at most {100 * TOLD:.0f} % outside", do=do))
 
 
 def corrected_by_metal(eps_normal: Floats) -> Floats:

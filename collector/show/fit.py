@@ -47,7 +47,9 @@ def fit_text(fit: Mapping[str, Any]) -> str:
 
 def _row(term: Mapping[str, Any]) -> str:
     value = "not known" if term["value"] is None else f"{term['value']:.4g}"
-    return f"  {term['name']:<40} {value:>10} {min(term['standard_error'], 1e9):10.2g} {min(term['t_ratio'], 9999.0):8.1f}"
+    return (
+        f"  {term['name']:<40} {value:>10} {min(term['standard_error'], 1e9):10.2g} {min(term['t_ratio'], 9999.0):8.1f}"
+    )
 
 
 def _told_apart(fit: Mapping[str, Any]) -> list[str]:

@@ -75,4 +75,4 @@ def _um(curve: tuple[Floats, Floats]) -> tuple[Floats, Floats]:
 
 def _used(row: Mapping[str, Any]) -> str:
     eps = row["normal"] if row["hemispherical"] is None else row["hemispherical"]
-    return f"{eps:.3f} at {row['t_C']:.0f} °C"
+    return f"{'not known' if eps is None else format(eps, '.3f')} at {row['t_C']:.0f} °C"

@@ -82,7 +82,7 @@ def _absorptance_row(part: str, found: Mapping[str, float]) -> str:
 
 def _heat(found: Mapping[str, Any]) -> list[str]:
     rows = found["emittance"]
-    known = rows[0]["hemispherical"] is not None
+    known = any(row["hemispherical"] is not None for row in rows)
     lines = [f"Heat    plate C   emittance   lowest  highest   outside range %{'   hemispherical' if known else ''}"]
     lines.append(f"                  of normal                       short   long{'       emittance' if known else ''}")
     for words, row in (
@@ -91,12 +91,16 @@ def _heat(found: Mapping[str, Any]) -> list[str]:
         *(("", each) for each in rows),
     ):
         line = (
-            f"{words:<8}{row['t_C']:7.0f} {row['normal']:11.4f} {row['least']:8.4f} {row['most']:8.4f}"
+            f"{words:<8}{row['t_C']:7.0f} {_told(row['normal']):>11} {row['least']:8.4f} {row['most']:8.4f}"
             f" {100.0 * row['short']:11.2f} {100.0 * row['long']:6.1f}"
         )
-        lines.append(line + (f" {row['hemispherical']:15.4f}" if known else ""))
+        lines.append(line + (f" {_told(row['hemispherical']):>15}" if known else ""))
     lines.append("Lowest, highest: nothing, or a black body's power, outside the measured range.")
     return lines
+
+
+def _told(emittance: float | None) -> str:
+    return "not known" if emittance is None else f"{emittance:.4f}"
 
 
 def _ascii(words: str) -> str:

@@ -224,11 +224,19 @@ def _basis(run: RUN) -> list[str]:
         "time stamps": _stamps(weather),
         "wind": f"{weather['wind']}, mean {weather['wind_mean_m_s']:.1f} m/s",
         "ground": f"albedo {weather['albedo'] if isinstance(weather['albedo'], str) else format(weather['albedo'], 'g')}",
-        "relations": ", ".join(f"{step} {name}" for step, name in models.items() if not isinstance(name, bool)),
+        "relations": ", ".join(f"{step} {name}" for step, name in _used(models, weather).items()),
         "heat held": _heat_held(run["heat_held"]),
         "not included": "pipes; stores; shading; dirt; snow",
     }
     return ["What it rests on", *(line for name, words in rows.items() for line in hung(words, head=f"  {name:<13}"))]
+
+
+def _used(models: RUN, weather: RUN) -> dict[str, str]:
+    """Relations that the result rests on: a decomposition only where the file has global irradiance alone."""
+    named = {step: name for step, name in models.items() if not isinstance(name, bool)}
+    if "'" not in (weather.get("radiation_made") or ""):
+        named.pop("decomposition", None)
+    return named
 
 
 def _coating(found: RUN | None) -> dict[str, str]:

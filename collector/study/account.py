@@ -30,6 +30,7 @@ from collector.study.year import (
     standing,
     wind_at_collector,
 )
+from weather.gate import remarks_of
 from weather.year import Floats, WeatherYear
 
 __all__ = ["HOUR_COLUMNS", "Run", "hours_table", "inspected", "runs_of"]
@@ -117,7 +118,7 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         "heat_held": _capacity(model),
         "weather": _weather(weather, scenario),
         "models": _models(scenario),
-        "notices": [*weather.notices, *conditions.plane.notices, *read_notices(scenario)],
+        "notices": [*remarks_of(weather), *conditions.plane.notices, *read_notices(scenario)],
     }
 
 
@@ -276,6 +277,9 @@ def _weather(weather: WeatherYear, scenario: Scenario) -> dict[str, Any]:
         "altitude_m": site.altitude_m,
         "utc_offset_h": site.utc_offset_h,
         "hours": len(weather),
+        "step_min": weather.step_min,
+        "radiation_made": weather.made,
+        "findings": [vars(each) for each in weather.findings],
         "source_years": list(weather.source_years),
         "stamp_rule_min": stamp.rule_min,
         "stamp_found_min": stamp.found_min,

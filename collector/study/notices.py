@@ -18,6 +18,7 @@ from collector.physics.fluids import valid_range
 from collector.study.plate import coating_of
 from collector.study.point import BY_REPORT
 from collector.study.year import HeatYear, wind_at_collector
+from weather.gate import remarks_of
 from weather.sky import DEW_POINT_RANGE, NEEDS
 from weather.year import Floats, Mask
 
@@ -65,7 +66,7 @@ def common_notices(year: HeatYear, scenario: Scenario, *, hours: Operated, still
         Each with its count.
     """
     return [
-        *year.conditions.weather.notices,
+        *remarks_of(year.conditions.weather),
         *year.conditions.plane.notices,
         *_unsolved(hours, still),
         *_fluid(hours, scenario),

@@ -9,7 +9,7 @@ from typing import Any, NamedTuple
 import numpy as np
 from scipy.constants import zero_Celsius
 
-from collector.build.surfaces import Surface, corrected_by_metal, read_surface, reference_sun
+from collector.build.surfaces import TOLD, Surface, corrected_by_metal, read_surface, reference_sun
 from collector.physics.blackbody import planck_1901
 from collector.physics.layers import hemispherical_of_normal
 from collector.physics.spectrum import cut_off, emittance, solar_absorptance
@@ -78,7 +78,7 @@ def study_surface(
         "working": _radiated(surface, np.array([working]))[0],
         "stagnation": _radiated(surface, np.array([stagnation]))[0],
         "emittance": _radiated(surface, TABLE),
-        "notices": [*surface.notices, *_unlike_metal(surface)],
+        "notices": [*surface.notices, *_unlike_metal(surface), *_untold(surface)],
         "cautions": [CAUTION],
     }
     return SurfaceStudy(account, _curves(surface, working=working, stagnation=stagnation))
@@ -96,11 +96,12 @@ def _radiated(surface: Surface, celsius: Floats) -> list[dict[str, float | None]
     if surface.metal:
         used = corrected_by_metal(used)
     known = surface.metal or surface.hemispherical is not None
+    told = normal.short + normal.long <= TOLD
     return [
         {
             "t_C": float(here),
-            "normal": float(normal.value[row]),
-            "hemispherical": float(used[row]) if known else None,
+            "normal": float(normal.value[row]) if told[row] else None,
+            "hemispherical": float(used[row]) if known and told[row] else None,
             "short": float(normal.short[row]),
             "long": float(normal.long[row]),
             "least": float(normal.least[row]),
@@ -108,6 +109,14 @@ def _radiated(surface: Surface, celsius: Floats) -> list[dict[str, float | None]
         }
         for row, here in enumerate(celsius)
     ]
+
+
+def _untold(surface: Surface) -> list[str]:
+    """Temperatures of the table at which most of the heat is outside the measured range."""
+    found = emittance(surface.normal, t=TABLE + zero_Celsius)
+    count = int(np.count_nonzero(found.short + found.long > TOLD))
+    said = f"no emittance is told at {count} of the table's {TABLE.size} temperatures: most of the heat is outside the range"
+    return [said] if count else []
 
 
 def _unlike_metal(surface: Surface) -> list[str]:

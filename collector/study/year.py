@@ -19,6 +19,7 @@ from collector.build.collector import Absorber, Collector, collector_of
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
 from weather.errors import InputError, Problem
+from weather.gate import usable
 from weather.plane import PlaneIrradiance, on_plane
 from weather.sky import sky_temperature
 from weather.stations import open_weather
@@ -31,6 +32,7 @@ __all__ = [
     "conditions_of",
     "heat_years",
     "open_scenario_weather",
+    "read_scenario_weather",
     "recoated",
     "standing",
     "wind_at_collector",
@@ -212,7 +214,25 @@ def _feeds(scenario: Scenario) -> Iterator[Feed]:
 
 
 def open_scenario_weather(scenario: Scenario, *, base: Path) -> WeatherYear:
-    """Weather year that a scenario names.
+    """Weather year that a scenario names, fit for a year's heat.
+
+    Parameters
+    ----------
+    scenario
+        Checked.
+    base
+        Folder of the scenario file.
+
+    Returns
+    -------
+    WeatherYear
+        Checked; one year, without a grave finding that the scenario does not accept.
+    """
+    return usable(read_scenario_weather(scenario, base=base), accept=scenario.place.accept)
+
+
+def read_scenario_weather(scenario: Scenario, *, base: Path) -> WeatherYear:
+    """Weather that a scenario names, whatever the checks say of it.
 
     Parameters
     ----------
@@ -234,7 +254,14 @@ def open_scenario_weather(scenario: Scenario, *, base: Path) -> WeatherYear:
         "utc_offset_h": place.utc_offset_h,
     }
     own = {key: value for key, value in given.items() if value is not None}
-    return open_weather(place.weather, base=base, place=own)
+    return open_weather(
+        place.weather,
+        base=base,
+        place=own,
+        columns=place.columns.mapping() if place.columns else None,
+        decomposition=scenario.models.decomposition,
+        year=place.year,
+    )
 
 
 def wind_at_collector(scenario: Scenario, wind: Floats) -> tuple[Floats, str]:

@@ -37,7 +37,9 @@ def read_pvgis_csv(text: str, path: Path) -> Raw:
     """
     lines = [line.strip() for line in text.splitlines()]
     rows = next((row for row, line in enumerate(lines) if line.startswith("time(UTC)")), len(lines))
-    head = {name.partition("(")[0].strip().lower(): value for name, _, value in (e.partition(":") for e in lines[:rows])}
+    head = {
+        name.partition("(")[0].strip().lower(): value for name, _, value in (e.partition(":") for e in lines[:rows])
+    }
     _refuse_short(sum(line[:8].isdigit() for line in lines[rows + 1 :]), path=path)
     frame, _ = iotools.read_pvgis_tmy(
         io.BytesIO("\n".join(_plain_head(lines, rows)).encode()), pvgis_format="csv", map_variables=False

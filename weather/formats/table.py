@@ -18,7 +18,8 @@ from weather.year import Floats
 
 __all__ = ["CLOUDS", "HEATS", "PRESSURES", "SPEEDS", "SUNS", "Columns", "read_table_of"]
 
-HEATS = {"C": (1.0, zero_Celsius), "K": (1.0, 0.0), "F": (5.0 / 9.0, zero_Celsius - 160.0 / 9.0)}  # factor, then offset [K]
+# factor, then offset [K]
+HEATS = {"C": (1.0, zero_Celsius), "K": (1.0, 0.0), "F": (5.0 / 9.0, zero_Celsius - 160.0 / 9.0)}
 SUNS = {"W/m2": None, "Wh/m2": 3600.0, "kJ/m2": 1e3, "MJ/m2": 1e6}  # J in one of those that are a step's sum
 SPEEDS = {"m/s": 1.0, "km/h": 1.0 / 3.6, "mph": 0.44704, "kn": 1852.0 / 3600.0}  # m/s
 CLOUDS = {"fraction": 1.0, "%": 0.01, "tenths": 0.1, "oktas": 0.125}
@@ -125,7 +126,11 @@ def _frame(text: str, columns: Columns) -> pd.DataFrame:
 
 def _refuse_absent(frame: pd.DataFrame, columns: Columns, *, path: Path) -> None:
     named = {name: f"place.columns.{key}" for key in vars(columns) if isinstance(name := getattr(columns, key), str)}
-    wanted = {name: key for name, key in named.items() if not key.endswith(("_unit", "_format", "separator", "decimal", "stamp"))}
+    wanted = {
+        name: key
+        for name, key in named.items()
+        if not key.endswith(("_unit", "_format", "separator", "decimal", "stamp"))
+    }
     wanted |= dict.fromkeys(columns.time, "place.columns.time")
     shown = ", ".join(str(name) for name in frame.columns)[:200] or "nothing"
     problems = [
@@ -192,6 +197,8 @@ def _in_si(frame: pd.DataFrame, columns: Columns, *, step_min: float) -> dict[st
 
 def _column(frame: pd.DataFrame, name: str, columns: Columns) -> Floats:
     words = frame[name].str.strip()
-    values = numbers(pd.DataFrame({name: words.str.replace(columns.decimal, ".") if columns.decimal != "." else words}), name)
+    values = numbers(
+        pd.DataFrame({name: words.str.replace(columns.decimal, ".") if columns.decimal != "." else words}), name
+    )
     values[np.isin(values, columns.missing)] = np.nan
     return values

@@ -44,7 +44,13 @@ def read_tmy2(text: str, path: Path) -> Raw:
     }
     years = tuple(sorted({1900 + int(year) % 100 for year in frame["year"]}))
     return Raw(
-        format="TMY2", stamp="start", rule_min=30.0, site=_tmy2_site(head), index=naive(frame.index), columns=columns, years=years
+        format="TMY2",
+        stamp="start",
+        rule_min=30.0,
+        site=_tmy2_site(head),
+        index=naive(frame.index),
+        columns=columns,
+        years=years,
     )
 
 
