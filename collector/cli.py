@@ -395,6 +395,49 @@ def coatings(
 
 
 @main.command()
+@_scenario
+@click.option(
+    "--weather",
+    "names",
+    multiple=True,
+    required=True,
+    metavar="FILE|STATION",
+    help="Three or more years: files, stations, or one file of several calendar years.",
+)
+@_set
+@_accept
+@click.option("--out", type=click.Path(path_type=Path), metavar="DIR", help="Also write years.csv and the figure.")
+@_json
+def years(
+    scenario: Path,
+    names: tuple[str, ...],
+    overrides: tuple[str, ...],
+    accept: tuple[str, ...],
+    out: Path | None,
+    as_json: bool,
+) -> None:
+    """How years differ: mean, spread, and what nine in ten exceed.
+
+    The scenario's own weather is not used. Paths count from the current folder.
+    """
+    from collector.build.reading import read_scenario
+    from collector.show.files import open_folder
+    from collector.show.years import write_years, years_text
+    from collector.study.years import study_years
+
+    checked = read_scenario(scenario, overrides=overrides).accepting(accept)
+    if out is not None:
+        open_folder(out)
+    found = study_years(checked, names=names, base=Path())
+    if out is not None:
+        click.echo(f"written to {out}: {', '.join(write_years(found.account, out=out))}", err=True)
+    _emit(found.account, text=lambda: years_text(found.account), as_json=as_json)
+    if not found.sound:
+        click.echo("noonplate: hours without convergence: see the result", err=True)
+        sys.exit(NOT_SOUND)
+
+
+@main.command()
 @click.argument("climate", type=click.Path(path_type=Path))
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the year's chance.")
 @click.option("--out", type=click.Path(path_type=Path), metavar="FILE", required=True, help="EPW file to write.")

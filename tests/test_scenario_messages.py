@@ -219,7 +219,7 @@ FAULTS = {
     "unknown key, near none": (
         "azimuth_deg = 190.0", "azimuth_deg = 190.0\nqqq = 0.5", "qqq",
         ("mounting.qqq: unknown key; "
-        "allowed: tilt_deg, azimuth_deg, wind_factor, wind_height_m, building_length_m"),
+        "allowed: tilt_deg, azimuth_deg, wind_factor, wind_height_m, building_length_m, horizon_csv, rows"),
     ),
     "unknown table, near another": (
         "[models]", "[modles]", "[modles]",

@@ -440,4 +440,7 @@ def test_a_spectrum_that_stops_in_the_near_infrared_tells_no_emittance(tmp_path)
     year = ["year", str(LAUNDRY), "--set", f"collector.absorber.reflectance_csv={path}"]
     refused = CliRunner().invoke(main, year)
     assert refused.exit_code == 2
-    assert "the spectrum tells no emittance, most of the heat at 100 C is outside its range; got 0.3 to 2.5 um" in refused.stderr
+    assert (
+        "the spectrum tells no emittance, most of the heat at 100 C is outside its range; got 0.3 to 2.5 um"
+        in refused.stderr
+    )

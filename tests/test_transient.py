@@ -40,7 +40,9 @@ def year() -> HeatYear:
 
 def drift_of(year: HeatYear, *, capacity=CAPACITY, **changes):
     conditions, uptake = year.conditions, replace(year.uptake, **changes)
-    return solve_drift(conditions.model.network, conditions.around, conditions.absorbed, capacity=capacity, uptake=uptake)
+    return solve_drift(
+        conditions.model.network, conditions.around, conditions.absorbed, capacity=capacity, uptake=uptake
+    )
 
 
 @pytest.fixture(scope="module")

@@ -46,7 +46,7 @@ def axis_of(index: pd.DatetimeIndex, *, at_end: bool, file: str) -> tuple[pd.Dat
     start = exact.floor("h")
     within = exact[0] - start[0] if len(index) else pd.Timedelta(0)
     leap_day = (start.month == 2) & (start.day == 29)
-    several = start.year.nunique() > 1 and len(index) > LONGEST_PLAIN
+    several = _several(start)
     if several:
         axis = pd.date_range(f"{start.year.min()}-01-01", f"{start.year.max()}-12-31 23:00", freq="h")
         with_leap = set(start.year[leap_day])
@@ -61,6 +61,12 @@ def axis_of(index: pd.DatetimeIndex, *, at_end: bool, file: str) -> tuple[pd.Dat
         place = axis.get_indexer(pd.DatetimeIndex(pd.to_datetime(parts)))
     labels = axis + lag + within
     return labels, place, _faults(place, labels=labels, file=file, index=index, several=several)
+
+
+def _several(start: pd.DatetimeIndex) -> bool:
+    """Whether rows are those of calendar years in a row, and not a typical year's from here and there."""
+    years = int(start.year.max() - start.year.min()) + 1 if len(start) else 1
+    return years > 1 and len(start) > max(LONGEST_PLAIN, 8760 * years // 2)
 
 
 def one_year(raw: Raw, *, year: int, file: str) -> Raw:

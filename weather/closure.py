@@ -53,7 +53,7 @@ def closure_of(sun: Sun, *, latitude_deg: float, ghi: Floats, dni: Floats, dhi: 
     return closure
 
 
-def suspicions(sun: Sun, *, latitude_deg: float, columns: Mapping[str, Floats], best: float) -> list[Finding]:
+def suspicions(sun: Sun, *, latitude_deg: float, columns: Mapping[str, Floats], best: float | None) -> list[Finding]:
     """Other readings of the three columns, or of the latitude's sign, under which they close far better.
 
     Parameters
@@ -65,13 +65,14 @@ def suspicions(sun: Sun, *, latitude_deg: float, columns: Mapping[str, Floats], 
     columns
         ``ghi``, ``dni``, ``dhi``, without NaN.
     best
-        Closure error as the file is read, at the best time of day [W/m2].
+        Closure error as the file is read, at the best time of day [W/m2]; None if no time of day was found.
 
     Returns
     -------
     list of Finding
         The best other reading, if there is one to believe.
     """
+    best = _error(sun, latitude_deg=latitude_deg, columns=columns) if best is None else best
     if best < SUSPECT:
         return []
     hours = int(np.count_nonzero(columns["ghi"] > 0.0))

@@ -45,7 +45,7 @@ def clear_sky(sun: Sun, *, site: Site) -> Floats:
         pressure=float(alt2pres(site.altitude_m)),
         dni_extra=sun.dni_extra,
     )
-    return np.nan_to_num(np.asarray(found["ghi"], dtype=float))
+    return np.asarray(np.nan_to_num(np.asarray(found["ghi"], dtype=float)))
 
 
 @dataclass(frozen=True, kw_only=True)

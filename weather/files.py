@@ -33,7 +33,7 @@ __all__ = ["read"]
 
 REQUIRED = (*RADIATION, "t_air", "wind")
 OPTIONAL = ("t_dew", "cloud", "longwave", "albedo")
-LOST = 400.0  # W/m2 of closure error, for a file in which no time of day fits
+PLACE = ("latitude_deg", "longitude_deg", "altitude_m", "utc_offset_h")
 
 
 def read(
@@ -82,7 +82,7 @@ def read(
             Problem(where=str(path), what=f"looks like {name} but can't be read as such", got=_first_line(fault), do=do)
         ) from None
     if place:
-        said = [_stands_in(key, own=getattr(raw.site, key)) for key in place]
+        said = _stand_ins(place, site=raw.site)
         raw = replace(raw, site=replace(raw.site, **place))  # type: ignore[arg-type] # never the name
     if faults := site_problems(raw.site, file=str(path)):
         raise InputError(faults)
@@ -95,6 +95,13 @@ def _reader(text: str, *, columns: Columns | None, file: str) -> tuple[str, Call
         return "the table that [place.columns] describes", partial(read_table_of, columns=columns)
     known = recognise(text, file=file)
     return known.name, known.read
+
+
+def _stand_ins(place: Mapping[str, float], *, site: Site) -> list[str]:
+    """What of the place is the scenario's, one sentence a value; one for all where the file has none at all."""
+    if all(np.isnan(getattr(site, key)) for key in PLACE) and len(place) == len(PLACE):
+        return ["the file carries no place: it is the one given under [place]"]
+    return [_stands_in(key, own=getattr(site, key)) for key in place]
 
 
 def _stands_in(key: str, *, own: float) -> str:
@@ -200,7 +207,7 @@ def _stamp_of(
     try:
         stamp, notice = find_stamp(sun, latitude_deg=latitude, rule_min=rule, file=file, **light)
     except InputError:
-        if others := suspicions(sun, latitude_deg=latitude, columns=light, best=LOST):
+        if others := suspicions(sun, latitude_deg=latitude, columns=light, best=None):
             raise InputError([each.problem(file=file, accept=False) for each in others]) from None
         raise
     found = suspicions(sun, latitude_deg=latitude, columns=light, best=stamp.rmse_w_m2 or 0.0)

@@ -61,7 +61,7 @@ class Finding:
             In a user's words.
         """
         where = f"{file}, {self.first}" if self.first else file
-        ways = [self.do, f"or take it as it is with --accept {self.name}" if accept else ""]
+        ways = [self.do, f"or take it as it is with --accept {self.name}, in a scenario place.accept" if accept else ""]
         return Problem(
             where=where,
             what=f"{self.name}: {self.what}",

@@ -36,7 +36,7 @@ def step_of(index: pd.DatetimeIndex, *, file: str) -> float:
     InputError
         The rows are farther apart, or do not fill an hour.
     """
-    apart = np.diff(np.asarray(index.to_numpy().astype("datetime64[s]").astype(np.int64))) / 60.0
+    apart: Floats = np.diff(index.to_numpy().astype("datetime64[s]").astype(np.float64)) / 60.0
     forward = apart[apart > 0.0]
     if not forward.size:
         got = "no two rows that follow each other in time"
@@ -73,16 +73,14 @@ def hourly(raw: Raw, *, file: str) -> Raw:
     Raises
     ------
     InputError
-        A step stands twice.
+        A step stands twice, or between two others.
     """
     if raw.step_min == 60.0:
         return raw
-    per_hour = round(60.0 / raw.step_min)
     order = np.argsort(raw.index.to_numpy(), kind="stable")
     stamps = raw.index[order]
-    if (twice := np.flatnonzero(stamps[1:] == stamps[:-1])).size:
-        got = f"{twice.size} such steps, first at {stamps[twice[0]]}"
-        raise InputError(Problem(where=file, what="a step of the year stands twice", got=got, allowed="one row a step"))
+    _refuse_untimely(stamps, step_min=raw.step_min, file=file)
+    per_hour = round(60.0 / raw.step_min)
     lag = pd.Timedelta(minutes=raw.step_min if raw.stamp == "end" else 0.0)
     start = pd.DatetimeIndex(stamps - lag)
     hour = start.floor("h")
@@ -110,6 +108,18 @@ def hourly(raw: Raw, *, file: str) -> Raw:
         rule_min=middle,
         said=(*raw.said, *said),
     )
+
+
+def _refuse_untimely(stamps: pd.DatetimeIndex, *, step_min: float, file: str) -> None:
+    if (twice := np.flatnonzero(stamps[1:] == stamps[:-1])).size:
+        got = f"{twice.size} such steps, first at {stamps[twice[0]]}"
+        raise InputError(Problem(where=file, what="a step of the year stands twice", got=got, allowed="one row a step"))
+    seconds = stamps.to_numpy().astype("datetime64[s]").astype(np.int64) % round(60.0 * step_min)
+    common = np.bincount(seconds).argmax()
+    if (off := np.flatnonzero(seconds != common)).size:
+        got = f"{off.size} rows, first at {stamps[off[0]]}"
+        allowed, do = f"a row every {step_min:g} min", "mend those stamps, or average the table to hours first"
+        raise InputError(Problem(where=file, what="rows off the common step", got=got, allowed=allowed, do=do))
 
 
 def _beyond_ends(raw: Raw) -> float:

@@ -11,7 +11,7 @@ Rules of this module, for what the sources leave open:
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -94,7 +94,7 @@ class Obstacles:
 
 
 def _compass() -> Floats:
-    return (np.arange(AROUND) + 0.5) * (360.0 / AROUND)
+    return (np.arange(AROUND, dtype=float) + 0.5) * (360.0 / AROUND)
 
 
 def sky_view(skyline_deg: Floats, *, tilt_deg: float, azimuth_deg: float) -> float:
@@ -191,4 +191,20 @@ def behind(obstacles: Obstacles, free: PlaneIrradiance, *, weather: WeatherYear,
     """
     sky, ground = min(obstacles.sky_open, 1.0), obstacles.ground_open
     beam = free.beam * open_beam(obstacles, weather=weather, sun=sun, lit=free.beam)
-    return replace(free, beam=beam, sky=free.sky * sky, horizon=free.horizon * sky, ground=free.ground * ground)
+    return PlaneIrradiance(
+        beam=beam,
+        sky=free.sky * sky,
+        horizon=free.horizon * sky,
+        ground=free.ground * ground,
+        incidence_deg=free.incidence_deg,
+        notices=(*free.notices, *_of_the_field(obstacles.rows)),
+    )
+
+
+def _of_the_field(rows: Rows | None) -> tuple[str, ...]:
+    if rows is None or rows.count == 1:
+        return ()
+    said = (
+        f"{rows.count} rows computed as one collector in their mean sunlight: the first, with none in front, gets more"
+    )
+    return (f"{said} and is hotter when it stands still",)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -29,6 +30,7 @@ UNMOVED = 0.9  # share of one wind speed in the year
 FEW = 12  # leaps a year: a typical year has a seam each month
 MANY = 0.01  # share of sunlit hours beyond what is possible, that stops
 OFTEN = 0.10  # share of hours whose components disagree, that warns
+FOLLOWING = ("closure", "irradiance-unit", "impossible", "hemisphere")
 RANK = {"stop": 0, "warn": 1, "note": 2}
 
 
@@ -49,7 +51,10 @@ def findings_of(evidence: Evidence, *, suspected: Sequence[Finding], stamp: Stam
     tuple of Finding
         Empty if all is well; each name once.
     """
-    found = [*suspected, *_clock(evidence, stamp), *(each for check in CHECKS for each in check(evidence))]
+    found = [*_clock(evidence, stamp), *(each for check in CHECKS for each in check(evidence))]
+    if suspected:  # what else is grave about the sunlight follows from it
+        found = [replace(each, severity="warn") if each.name in FOLLOWING else each for each in found]
+    found = [*suspected, *found]
     once = {each.name: each for each in reversed(found)}
     kept = [each for each in found if once[each.name] is each]
     return tuple(sorted(kept, key=lambda each: RANK[each.severity]))
@@ -105,7 +110,8 @@ def _limits(e: Evidence, masks: dict[str, Mask], *, name: str, words: str) -> li
     each = ", ".join(f"{key.upper()} {np.count_nonzero(mask)} h" for key, mask in masks.items() if mask.any())
     many = np.count_nonzero(whole) > MANY * _count(e.cosine)
     if name == "rare":
-        return e.finding(name, whole, severity="warn" if many else "note", what=f"{each} {words}")
+        do = "clouds' edges and snow can do that; look at those hours if they are many"
+        return e.finding(name, whole, severity="warn" if many else "note", what=f"{each} {words}", do=do)
     do = "look at those hours; check columns, units and clock"
     return e.finding(name, whole, severity="stop" if many else "warn", what=f"{each} {words}", do=do)
 
@@ -119,7 +125,8 @@ def components(e: Evidence) -> Iterator[Finding]:
     off, told = disagreeing(ghi=ghi, dni=dni, dhi=dhi, zenith_deg=e.sun.apparent_zenith_deg)
     share = _count(off) / _count(told)
     what = f"GHI and DHI + DNI cos z disagree by more than 8 % (15 % with a low sun) in {100 * share:.1f} % of the hours compared"
-    yield from e.finding("components", off, severity="warn" if share > OFTEN else "note", what=what)
+    do = "a few are usual in measured and typical years; many point to an instrument, a clock or a column"
+    yield from e.finding("components", off, severity="warn" if share > OFTEN else "note", what=what, do=do)
 
 
 def above_clear(e: Evidence) -> Iterator[Finding]:
@@ -131,7 +138,8 @@ def above_clear(e: Evidence) -> Iterator[Finding]:
     mask = high & (ghi > 1.1 * e.clear + 20.0)
     share = _count(mask) / _count(high)
     what = f"GHI more than 10 % above a clean, clear sky in {100 * share:.1f} % of the hours with the sun above 12 deg"
-    yield from e.finding("above-clear-sky", mask, severity="warn" if share > 0.05 else "note", what=what)
+    do = "a few are clouds' edges; many point to the place's altitude, a unit or an instrument"
+    yield from e.finding("above-clear-sky", mask, severity="warn" if share > 0.05 else "note", what=what, do=do)
 
 
 def night(e: Evidence) -> Iterator[Finding]:

@@ -164,7 +164,7 @@ def network_of(collector: Collector, *, pressure: float) -> Network:
     return Network(
         gaps=gaps,
         eps_front=emittances[0],
-        sky_share=1.0 if collector.whole_sky else sky_view_factor(collector.tilt_deg),
+        sky_share=collector.sky_open * (1.0 if collector.whole_sky else sky_view_factor(collector.tilt_deg)),
         tilt_deg=collector.tilt_deg,
         pressure=pressure,
         u_back=collector.u_back,

@@ -145,7 +145,8 @@ def reported_network(collector: ReportedCollector) -> ReportedNetwork:
         With the sky's share of the view.
     """
     return ReportedNetwork(
-        collector=collector, sky_share=1.0 if collector.whole_sky else sky_view_factor(collector.tilt_deg)
+        collector=collector,
+        sky_share=collector.sky_open * (1.0 if collector.whole_sky else sky_view_factor(collector.tilt_deg)),
     )
 
 

@@ -117,6 +117,8 @@ class Collector:
         Heat held per kelvin, as given; None leaves it to the materials [J/m2K].
     materials
         What is known of them.
+    sky_open
+        Share of the sky's view that obstacles leave open.
     """
 
     covers: tuple[Cover, ...]
@@ -134,6 +136,7 @@ class Collector:
     whole_sky: bool
     capacity: float | None = None
     materials: Materials = Materials()
+    sky_open: float = 1.0
 
     @property
     def area(self) -> float:
@@ -157,7 +160,7 @@ class ReportedCollector:
         Of sky and ground light; None integrates the beam's.
     tested_to
         Highest mean fluid above air in the test; None if not told [K].
-    length, width, tilt_deg, fluid, mass_fraction, flow, whole_sky
+    length, width, tilt_deg, fluid, mass_fraction, flow, whole_sky, sky_open
         As for ``Collector``.
     """
 
@@ -181,6 +184,7 @@ class ReportedCollector:
     mass_fraction: float
     flow: float
     whole_sky: bool
+    sky_open: float = 1.0
 
     @property
     def area(self) -> float:

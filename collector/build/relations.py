@@ -9,7 +9,12 @@ __all__ = ["FIXED", "relations"]
 
 FIXED = {
     "sun": "solar position algorithm, Reda & Andreas 2004, NREL/TP-560-34302, at the middle of each hour; through pvlib",
-    "time stamps": "closure of GHI against DHI + DNI cos z over shifts of -95 to 95 min",
+    "time stamps": "closure of GHI against DHI + DNI cos z over shifts of -300 to 300 min",
+    "steps to hours": "an hour is the mean of its steps, its middle the mean of their middles: energy is kept (no source needed)",
+    "limits of sunlight": "possible and rare values, components against each other; Long & Shi 2008, Open Atmos. Sci. J. 2, 23",
+    "clear sky, checks": "simplified Solis; Ineichen 2008, Solar Energy 82, 758; optical depth 0.02 and 0.5 cm of water",
+    "third component": "closure: GHI = DHI + DNI cos z, where a file has two of the three",
+    "dew point": "from relative humidity: Magnus form, WMO No. 8 (17.62, 243.12 C)",
     "covers": "Fresnel and absorption, both polarisations kept apart to the end; Duffie & Beckman, Sec. 5.1-5.3",
     "long wave": "grey parallel surfaces, Stefan-Boltzmann; sky and ground by view factor",
     "air gap to 55 deg": "Hollands, Unny, Raithby & Konicek 1976, J. Heat Transfer 98, 189",
@@ -37,6 +42,11 @@ FIXED = {
     "1983, ASHRAE J. 25(6), 60 (from memory); dew point where not given: Running et al. 1987, Can. J. For. Res. 17, 472",
     "synthetic wind": "Weibull of shape 2, autoregressive; common practice, no source",
     "synthetic cloud": "Kasten & Czeplak 1980, Solar Energy 24, 177, solved for the cover",
+    "horizon": "view of the sky above the skyline, over elevation in closed form; beam by five-minute parts (our rule, no source)",
+    "rows, beam": "shaded share of the height by the profile angle; Duffie & Beckman, Sec. 1.9; loss in proportion to it",
+    "rows, sky": "mean masking angle over the height; Passias & Kallback 1984, Solar Cells 11, 281 (from memory)",
+    "rows, ground": "strip between rows by crossed strings; Hottel 1954, in McAdams, Heat Transmission, Ch. 4 (from memory)",
+    "years": "sample statistics, normal P90; exceedance by rank m/(n+1), Weibull 1939, in Gumbel 1958, Statistics of Extremes",
     "coatings, worth": "present value, (1 - (1 + d)^-n) / d; levelised cost of heat, Louvet et al. 2019, Solar Energy 193, 85",
 }
 

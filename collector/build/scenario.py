@@ -11,6 +11,7 @@ from pydantic import BeforeValidator, Field, PrivateAttr, WithJsonSchema, model_
 from scipy.constants import zero_Celsius
 
 from collector.build.catalogue import shelf
+from collector.build.obstacles import RowsTable
 from collector.build.surfaces import Surface
 from collector.build.table import Table, fault, quantity
 from collector.build.weather_table import ColumnsTable
@@ -18,6 +19,7 @@ from collector.physics.convection import WIND_RELATIONS
 from collector.physics.fluids import freezing_point
 from collector.physics.glazing import slab_from_normal
 from weather.components import DECOMPOSITIONS
+from weather.obstacles import Horizon
 from weather.plane import MODELS as TILTED_SKY_MODELS
 from weather.sky import MODELS as SKY_MODELS
 
@@ -98,10 +100,28 @@ class MountingTable(Table):
     building_length_m: float | None = quantity(
         2.0, 200.0, "m", doc="cube root of the building's volume, for the wind relation 'mitchell'", default=None
     )
+    horizon_csv: str | None = Field(
+        None, min_length=1, description="skyline: azimuth_deg, elevation_deg in CSV, relative to this file"
+    )
+    rows: RowsTable | None = Field(None, description="rows of collectors in front of each other")
+    _horizon: Horizon | None = PrivateAttr(default=None)
+
+    @property
+    def horizon(self) -> Horizon | None:
+        """What the file of ``horizon_csv`` holds, once it is read."""
+        return self._horizon
+
+    def with_horizon(self, horizon: Horizon) -> MountingTable:
+        """Return the same table with its file's content."""
+        table = self.model_copy()
+        table._horizon = horizon
+        return table
 
     @model_validator(mode="after")
     def _check(self) -> MountingTable:
         self._one_of(RIVALS["wind"], optional=True)
+        if self.rows is not None and (wrong := self.rows.fault_at(self.tilt_deg)):
+            raise wrong
         return self
 
 

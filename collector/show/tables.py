@@ -156,12 +156,33 @@ def _sunlight(run: RUN) -> list[str]:
     plane = max(sum(rows), 1e-9)
     longest = max(*(abs(value) for value in rows), 1e-9)
     lines = ["Where the year's sunlight went                     kWh/m2       %"]
+    lines += _taken(run)
     lines.append(f"  {'sunlight on the plane':<46} {sum(rows):8.1f}   100.0")
     lines += [
         f"  {words:<46} {value:8.1f}  {100.0 * value / plane:6.1f}  {'#' * round(12 * max(value, 0.0) / longest)}".rstrip()
         for value, (_, words) in zip(rows, PATHS, strict=True)
     ]
     return lines
+
+
+def _taken(run: RUN) -> list[str]:
+    """A line above the sunlight on the plane, of which obstacles' part is none."""
+    if (taken := run.get("obstacles")) is None:
+        return []
+    beam, diffuse = taken["beam_kWh_m2"], taken["diffuse_kWh_m2"]
+    return [f"  {f'taken by horizon and rows (beam {beam:.1f})':<46} {beam + diffuse:8.1f}       -"]
+
+
+def _obstacles(found: RUN | None) -> dict[str, str]:
+    """A row for the obstacles, and what is not included in the result."""
+    left_out = "pipes; stores; dirt; snow"
+    if found is None:
+        return {"not included": left_out.replace("dirt", "shading; dirt")}
+    words = [f"horizon of {found['horizon']}"] if found["horizon"] else []
+    words += [f"{found['rows']} rows"] if found["rows"] else []
+    words += [f"{100.0 * found['sky_open']:.1f} % of the sky's view left", "obstacles as warm as the air"]
+    words += [f"{100.0 * found['ground_open']:.1f} % of the ground's light"] if found["rows"] else []
+    return {"obstacles": ", ".join(words).encode("ascii", "replace").decode("ascii"), "not included": left_out}
 
 
 def _month_table(run: RUN) -> list[str]:
@@ -226,7 +247,7 @@ def _basis(run: RUN) -> list[str]:
         "ground": f"albedo {weather['albedo'] if isinstance(weather['albedo'], str) else format(weather['albedo'], 'g')}",
         "relations": ", ".join(f"{step} {name}" for step, name in _used(models, weather).items()),
         "heat held": _heat_held(run["heat_held"]),
-        "not included": "pipes; stores; shading; dirt; snow",
+        **_obstacles(run.get("obstacles")),
     }
     return ["What it rests on", *(line for name, words in rows.items() for line in hung(words, head=f"  {name:<13}"))]
 
@@ -350,6 +371,10 @@ def _side_by_side(runs: Sequence[RUN], *, first: int) -> list[str]:
     parts = [_ways(run) for run in runs]
     spans = [_span(run) or (run["useful_kWh_m2"],) * 2 for run in runs]
     lines = [row("kWh/m2 a year", (f"[{first + place}]" for place in range(len(runs))))]
+    if any(run.get("obstacles") for run in runs):
+        taken = [run.get("obstacles") or {"beam_kWh_m2": 0.0, "diffuse_kWh_m2": 0.0} for run in runs]
+        cells = (f"{each['beam_kWh_m2'] + each['diffuse_kWh_m2']:.1f}" for each in taken)
+        lines.append(row("taken by horizon and rows", cells))
     lines.append(row("sunlight on the plane", (f"{sum(part):.1f}" for part in parts)))
     lines += [row(f"  {names[key]}", (f"{part[place]:.1f}" for part in parts)) for place, (key, _) in enumerate(PATHS)]
     lines.append(row("  other relations, lowest", (f"{low:.1f}" for low, _ in spans)))
@@ -425,7 +450,7 @@ def check_text(found: RUN) -> str:
     temperatures = ", ".join(f"{value:g}" for value in (held if isinstance(held, list) else [held]))
     lines = [
         *textwrap.wrap(found["title"], WIDTH),
-        "nothing wrong in the scenario or its weather",
+        _verdict(found["weather"]),
         "",
         f"  {'inlet' if 'inlet_C' in found else 'mean fluid'} {temperatures} C, {found['area_m2']:.1f} m2 of collector",
         f"  at normal incidence the plate takes up {100 * found['normal_absorptance_plate']:.1f} % of the sunlight",
@@ -433,6 +458,13 @@ def check_text(found: RUN) -> str:
     ]
     blocks = [lines, _basis(found), *remarks([found])]
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
+
+
+def _verdict(weather: RUN) -> str:
+    grave = sum(each["severity"] != "note" for each in weather.get("findings", ()))
+    if not grave:
+        return "nothing wrong in the scenario or its weather"
+    return f"nothing wrong in the scenario; {grave} finding{'s' if grave > 1 else ''} about its weather, see below"
 
 
 def models_text(relations: Mapping[str, Mapping[str, str]]) -> str:

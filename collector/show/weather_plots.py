@@ -84,7 +84,9 @@ def _carpet(figure: Figure, axes: Axes, curves: Curves, *, days: int) -> None:
         _by_day(curves["ghi"], days).T, aspect="auto", origin="lower", cmap="cividis", extent=(0, days, 0, 24), vmin=0.0,
         interpolation="nearest",
     )  # fmt: skip
-    noon = np.argmin(np.abs(_by_day(curves["solar_hour"], days) - 12.0), axis=1) + 0.5
+    off = _by_day(curves["solar_hour"], days) - 12.0
+    nearest = np.argmin(np.abs(off), axis=1)
+    noon = nearest + 0.5 - off[np.arange(days), nearest]
     axes.plot(np.arange(days) + 0.5, noon, color="white", linewidth=0.9, linestyle="--")
     title = "Sunlight by hour and day; dashed: the hour of solar noon, about which it should lie evenly"
     axes.set_title(title, fontsize=9, loc="left", color=INK)

@@ -19,6 +19,7 @@ from collector.build.collector import Collector
 from collector.build.scenario import CHOICES, Scenario
 from collector.study.cautions import cautions_of
 from collector.study.notices import notices_of
+from collector.study.obstructed import taken_by_obstacles
 from collector.study.plate import coating_of, read_notices
 from collector.study.sureness import Alternative, alternatives
 from collector.study.year import (
@@ -118,6 +119,7 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         "heat_held": _capacity(model),
         "weather": _weather(weather, scenario),
         "models": _models(scenario),
+        "obstacles": taken_by_obstacles(scenario, free=conditions.free, plane=conditions.plane),
         "notices": [*remarks_of(weather), *conditions.plane.notices, *read_notices(scenario)],
     }
 
@@ -140,6 +142,7 @@ def _account(year: HeatYear, scenario: Scenario, *, hours: Operated, still: Stea
         "title": scenario.title,
         "inlet_C" if feed.at_inlet else "mean_C": _tidy(feed.temperature - zero_Celsius),
         **_sums(year.conditions, hours),
+        "obstacles": taken_by_obstacles(scenario, free=year.conditions.free, plane=year.conditions.plane),
         **_sizes(year, scenario),
         "hours_on": round(float(hours.running.sum())),
         "hottest_plate_C": float(hours.t_plate.max()) - zero_Celsius,

@@ -15,11 +15,13 @@ from collector.balance.operated import Operated, operated_steadily
 from collector.balance.optics import Absorbed
 from collector.balance.steady import Feed, SteadyState, Uptake, operate, solve_stagnation
 from collector.balance.transient import solve_drift
-from collector.build.collector import Absorber, Collector, collector_of
+from collector.build.collector import Absorber, Collector, ReportedCollector, collector_of
 from collector.build.scenario import Scenario
 from collector.physics.convection import WIND_RELATIONS
+from collector.study.obstructed import obstacles_of
 from weather.errors import InputError, Problem
 from weather.gate import usable
+from weather.obstacles import Obstacles, behind
 from weather.plane import PlaneIrradiance, on_plane
 from weather.sky import sky_temperature
 from weather.stations import open_weather
@@ -52,6 +54,8 @@ class Conditions:
         What the hours bring.
     model
         What is solved.
+    free
+        Sunlight on the plane as it were without obstacles; None where there are none.
     """
 
     weather: WeatherYear
@@ -59,6 +63,7 @@ class Conditions:
     around: Surroundings
     absorbed: Absorbed
     model: Model
+    free: PlaneIrradiance | None = None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -142,11 +147,26 @@ def conditions_of(scenario: Scenario, *, weather: WeatherYear, sun: Sun | None =
         The same at every fluid temperature.
     """
     sun = sun or sun_position(weather)
-    model = model_of(collector_of(scenario), pressure=weather.pressure)
-    plane = _plane(scenario, weather=weather, sun=sun)
+    obstacles = obstacles_of(scenario)
+    model = model_of(_collector(scenario, obstacles), pressure=weather.pressure)
+    free = _plane(scenario, weather=weather, sun=sun)
+    plane = free if obstacles is None else behind(obstacles, free, weather=weather, sun=sun)
     around = _surroundings(scenario, weather=weather, sun=sun)
     absorbed = model.absorbed(plane, around)
-    return Conditions(weather=weather, plane=plane, around=around, absorbed=absorbed, model=model)
+    return Conditions(
+        weather=weather,
+        plane=plane,
+        around=around,
+        absorbed=absorbed,
+        model=model,
+        free=None if obstacles is None else free,
+    )
+
+
+def _collector(scenario: Scenario, obstacles: Obstacles | None) -> Collector | ReportedCollector:
+    """The collector where it stands: obstacles are as warm as the air, and so is the ground, whose share they join."""
+    built = collector_of(scenario)
+    return built if obstacles is None else replace(built, sky_open=obstacles.sky_open)
 
 
 def _at(conditions: Conditions, uptake: Uptake) -> HeatYear:

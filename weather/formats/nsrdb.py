@@ -71,8 +71,7 @@ def read_nsrdb_bare(text: str, path: Path) -> Raw:
     """
     frame = pd.read_csv(io.StringIO(text))
     index = pd.DatetimeIndex(pd.to_datetime(frame[CLOCK]))
-    said = ("the table carries no place: it is the one given under [place]",)
-    return _raw(frame, index, site=site_of(path.stem, "", "", altitude="", offset=""), path=path, utc=False, said=said)
+    return _raw(frame, index, site=site_of(path.stem, "", "", altitude="", offset=""), path=path, utc=False, said=())
 
 
 def _raw(
