@@ -70,7 +70,7 @@ def read(
         The file can't be read, is not a year, or lacks what a year needs.
     """
     text = _text(path)
-    name, reader = _reader(text, columns=columns, file=str(path))
+    name, reader = _reader(text, columns=columns, place=place or {}, file=str(path))
     try:
         raw = reader(text, path)
         raw = hourly(raw if year is None else one_year(raw, year=year, file=str(path)), file=str(path))
@@ -89,10 +89,14 @@ def read(
     return _checked(raw, file=str(path), said=said if place else [], decomposition=decomposition)
 
 
-def _reader(text: str, *, columns: Columns | None, file: str) -> tuple[str, Callable[[str, Path], Raw]]:
+def _reader(
+    text: str, *, columns: Columns | None, place: Mapping[str, float], file: str
+) -> tuple[str, Callable[[str, Path], Raw]]:
     """Name and reader of the format that the content shows, or of the table that is described."""
     if columns is not None:
-        return "the table that [place.columns] describes", partial(read_table_of, columns=columns)
+        return "the table that [place.columns] describes", partial(
+            read_table_of, columns=columns, utc_offset_h=place.get("utc_offset_h", np.nan)
+        )
     known = recognise(text, file=file)
     return known.name, known.read
 

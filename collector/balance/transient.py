@@ -13,13 +13,14 @@ from collector.balance.losses import Facing, Losses, Step, Surroundings
 from collector.balance.operated import Operated
 from collector.balance.optics import Absorbed
 from collector.balance.steady import LONGEST_STEP, MOST_FILMS, SETTLED, SOLVED, Flow, Network, Uptake, first_guess
+from collector.balance.stepped import mended
 from weather.year import Floats, Mask
 
-__all__ = ["solve_drift"]
+__all__ = ["DriftModel", "Line", "solve_drift"]
 
 HOUR = 3600.0  # s
 EXACT = 4e-7  # W/m2, of every part's balance and every hour's joint
-MOST_ITERATIONS = 60
+MOST_ITERATIONS = 18  # after which what is open is solved in small steps
 FITTED = (
     0.05  # K, a part's move below which its exponential stays as it is: at a relation's kink it would flip for ever
 )
@@ -43,7 +44,7 @@ class _Memory:
     fall: Floats
 
 
-class _Line(NamedTuple):
+class Line(NamedTuple):
     """Net gain of the plate [W/m2] at temperature ``t`` [K], linear, with the network and the fluid that it was taken from."""
 
     t: Floats
@@ -70,7 +71,7 @@ class _Part(NamedTuple):
     on: Mask
     runs: Mask
     nodes: Floats
-    line: _Line
+    line: Line
     share: Floats
     start: Floats
     end: Floats
@@ -115,7 +116,7 @@ def solve_drift(
     Anal. 7 (1970) 47 (from memory). Held against a stiff integrator on an independent scalar solution by
     ``tests/test_transient.py``.
     """
-    model = _Model(network, network.facing(around), absorbed, uptake, capacity / HOUR)
+    model = DriftModel(network, network.facing(around), absorbed, uptake, capacity / HOUR)
     memories, flow = model.guess(around)
     t_film = np.full(len(absorbed.plate), uptake.feed.temperature)
     ran = np.zeros(len(absorbed.plate), dtype=bool)
@@ -126,7 +127,8 @@ def solve_drift(
         second = model.second(memories, first, flow=flow)
         end, by_start, ran = _joined(first, second)
         missed = end - ends
-        if max(model.rate * np.abs(missed).max(), first.open.max(), second.open.max(initial=0.0)) < EXACT:
+        still_open = max(model.rate * np.abs(missed).max(), first.open.max(), second.open.max(initial=0.0))
+        if still_open < EXACT:
             break
         shift = np.clip(_carried(missed, by_start), -LONGEST_STEP, LONGEST_STEP)
         _remember(memories, first, second, moved=np.roll(shift, 1))
@@ -134,10 +136,11 @@ def solve_drift(
             for part in (first, second):
                 model.refilm(part, flow, t_film)
         ends = ends + shift
-    return _drift(model, first, second, end=end, flow=flow)
+    hours = _drift(model, first, second, end=end, flow=flow)
+    return hours if hours.converged.all() else mended(hours, model=model, flow=flow, ran=ran)
 
 
-class _Model(NamedTuple):
+class DriftModel(NamedTuple):
     """What is solved; heat held per kelvin and hour as ``rate`` [W/m2K]."""
 
     network: Network
@@ -186,13 +189,13 @@ class _Model(NamedTuple):
         nodes = np.where(on, memories[1].nodes, memories[0].nodes)
         fall = np.where(on, memories[1].fall, memories[0].fall)
         line = (
-            self._line(hours, on, nodes=nodes, flow=flow)
+            self.line(hours, on, nodes=nodes, flow=flow)
             if known is None
             else self._renewed(known, on, nodes=nodes, flow=flow)
         )
-        speed = np.maximum(np.where(np.isnan(fall), line.fall, fall) / self.rate, 1e-3)
-        lasting = np.exp(-speed)
-        weight = 1.0 / (1.0 - lasting) - 1.0 / speed
+        fall = np.where(np.isnan(fall), line.fall, fall)
+        speed = np.maximum(fall / self.rate, 1e-3)
+        weight = 1.0 / (1.0 - np.exp(-speed)) - 1.0 / speed
         damping = 1.0 + weight * line.fall / self.rate
         gain, way = line.at(start), np.where(on, self.stops, self.starts) - start
         rise = gain / self.rate / damping
@@ -216,7 +219,7 @@ class _Model(NamedTuple):
         on = ~first.on[hours]
         nodes = np.where(on, memories[1].nodes[:, hours], memories[0].nodes[:, hours])
         fall = np.where(on, memories[1].fall[hours], memories[0].fall[hours])
-        line = self._line(hours, on, nodes=nodes, flow=flow)
+        line = self.line(hours, on, nodes=nodes, flow=flow)
         share = 1.0 - first.share[hours]
         time = share / self.rate
         weight = _weight(np.where(np.isnan(fall), line.fall, fall) * time)
@@ -242,15 +245,16 @@ class _Model(NamedTuple):
             hours, t_mean = part.hours[late], part.line.t_mean[late]
             flow[:, hours], t_film[hours] = self.uptake.stream.at(t_mean), t_mean
 
-    def _renewed(self, known: _Part, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
+    def _renewed(self, known: _Part, on: Mask, *, nodes: Floats, flow: Floats) -> Line:
         """The known line, taken again in the hours whose nodes have moved or whose pump has turned."""
         hours = np.flatnonzero((nodes != known.nodes).any(axis=0) | (on != known.on))
         if hours.size > 0.7 * on.size:
-            return self._line(np.arange(on.size), on, nodes=nodes, flow=flow)
-        _put(known.line, self._line(hours, on[hours], nodes=nodes[:, hours], flow=flow), hours)
+            return self.line(np.arange(on.size), on, nodes=nodes, flow=flow)
+        _put(known.line, self.line(hours, on[hours], nodes=nodes[:, hours], flow=flow), hours)
         return known.line
 
-    def _line(self, hours: Hours, on: Mask, *, nodes: Floats, flow: Floats) -> _Line:
+    def line(self, hours: Hours, on: Mask, *, nodes: Floats, flow: Floats) -> Line:
+        """Net gain of some hours at given temperatures, with the pump on or off."""
         whole = hours.size == self.absorbed.plate.size
         sun, facing = (self.absorbed, self.facing) if whole else (self.absorbed.at(hours), self.facing.at(hours))
         step = self.network.step(facing, sun_on_covers=sun.covers, nodes=nodes)
@@ -260,7 +264,7 @@ class _Model(NamedTuple):
         conductance, drawn, t_mean = np.zeros(on.size), np.zeros(on.size), t_plate.copy()
         conductance[runs], drawn[runs] = coupling.conductance, useful
         t_mean[runs] = self.uptake.mean(coupling, t_plate=t_plate[runs], useful=useful)
-        return _Line(
+        return Line(
             t=t_plate,
             net=sun.plate - step.loss - drawn,
             fall=step.slope + conductance,
@@ -315,12 +319,12 @@ def _moved(part: _Part, memories: tuple[_Memory, _Memory], *, moved: Floats) -> 
     """A part's nodes at its mean, left alone where they are there already, and what shapes its course."""
     moves = part.line.step.move(plate=part.mean + part.mean_by_start * moved - part.line.t)
     largest = np.abs(moves).max(axis=0)
-    moves = np.where(largest * part.line.fall < 0.1 * EXACT, 0.0, np.clip(moves, -LONGEST_STEP, LONGEST_STEP))
+    moves = np.where(largest * part.line.fall < 0.01 * EXACT, 0.0, np.clip(moves, -LONGEST_STEP, LONGEST_STEP))
     known = np.where(part.on, memories[1].fall[part.hours], memories[0].fall[part.hours])
     return part.nodes + moves, np.where((largest > FITTED) | np.isnan(known), part.line.fall, known)
 
 
-def _drift(model: _Model, first: _Part, second: _Part, *, end: Floats, flow: Floats) -> Operated:
+def _drift(model: DriftModel, first: _Part, second: _Part, *, end: Floats, flow: Floats) -> Operated:
     """Hours put together of their parts, each balance taken afresh."""
     parts = (first, second)
 

@@ -75,7 +75,7 @@ class Columns:
     skip_rows: int = 0
 
 
-def read_table_of(text: str, path: Path, *, columns: Columns) -> Raw:
+def read_table_of(text: str, path: Path, *, columns: Columns, utc_offset_h: float = np.nan) -> Raw:
     """Read a table by its mapping.
 
     Parameters
@@ -86,6 +86,8 @@ def read_table_of(text: str, path: Path, *, columns: Columns) -> Raw:
         For messages.
     columns
         The mapping.
+    utc_offset_h
+        Of the place, if it is known: stamps that carry their own zone are brought to it.
 
     Returns
     -------
@@ -100,6 +102,8 @@ def read_table_of(text: str, path: Path, *, columns: Columns) -> Raw:
     frame = _frame(text, columns)
     _refuse_absent(frame, columns, path=path)
     index, utc = _index(frame, columns, path=path)
+    if utc and not np.isnan(utc_offset_h):
+        index, utc = index + pd.Timedelta(hours=utc_offset_h), False
     step = step_of(index, file=str(path))
     rule = {"start": 0.5 * step, "middle": 0.0, "end": -0.5 * step}[columns.stamp]
     return Raw(
