@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any, NamedTuple
 
@@ -13,7 +14,7 @@ from collector.balance.losses import Facing, Losses, Step, Surroundings
 from collector.balance.operated import Operated
 from collector.balance.optics import Absorbed
 from collector.balance.steady import LONGEST_STEP, MOST_FILMS, SETTLED, SOLVED, Flow, Network, Uptake, first_guess
-from collector.balance.stepped import mended
+from collector.balance.stepped import SteppedHour, in_steps, with_stepped
 from weather.year import Floats, Mask
 
 __all__ = ["DriftModel", "Line", "solve_drift"]
@@ -21,6 +22,8 @@ __all__ = ["DriftModel", "Line", "solve_drift"]
 HOUR = 3600.0  # s
 EXACT = 4e-7  # W/m2, of every part's balance and every hour's joint
 MOST_ITERATIONS = 18  # after which what is open is solved in small steps
+MOST_PASSES = 6
+SAME = 1e-9  # K
 FITTED = (
     0.05  # K, a part's move below which its exponential stays as it is: at a relation's kink it would flip for ever
 )
@@ -42,6 +45,27 @@ class _Memory:
 
     nodes: Floats
     fall: Floats
+
+
+@dataclass(kw_only=True)
+class _State:
+    """Where the iteration stands.
+
+    Parameters
+    ----------
+    memories
+        Of the standing and of the running state.
+    flow
+        Film and heat capacity flow of each hour, ``(2, n)``, taken at the mean fluid temperature ``t_film`` ``(n,)`` [K].
+    ends, ran
+        Plate temperature at the end of each hour [K], and whether the pump runs then.
+    """
+
+    memories: tuple[_Memory, _Memory]
+    flow: Floats
+    t_film: Floats
+    ends: Floats
+    ran: Mask
 
 
 class Line(NamedTuple):
@@ -117,27 +141,45 @@ def solve_drift(
     ``tests/test_transient.py``.
     """
     model = DriftModel(network, network.facing(around), absorbed, uptake, capacity / HOUR)
-    memories, flow = model.guess(around)
-    t_film = np.full(len(absorbed.plate), uptake.feed.temperature)
-    ran = np.zeros(len(absorbed.plate), dtype=bool)
-    ends = np.minimum(memories[0].nodes[-1], memories[1].nodes[-1])
+    state = model.guess(around)
+    stepped: dict[int, SteppedHour] = {}
+    for _ in range(MOST_PASSES):
+        first, second, stuck = _iterate(model, state, stepped)
+        moved = [hour for hour, one in stepped.items() if abs(one.start - state.ends[hour - 1]) > SAME]
+        if not stuck and not moved:
+            break
+        for hour in sorted({*stuck, *moved}):
+            solved = in_steps(
+                model, hour, start=float(state.ends[hour - 1]), ran=bool(state.ran[hour - 1]), flow=state.flow
+            )
+            stepped[hour], state.ends[hour], state.ran[hour] = solved, solved.end, solved.ran
+    return with_stepped(_drift(model, first, second, state=state), stepped, model=model)
+
+
+def _iterate(
+    model: DriftModel, state: _State, stepped: Mapping[int, SteppedHour]
+) -> tuple[_Part, _Part, list[int]]:  # fmt: skip
+    """Newton on the ends of all hours but those solved in small steps, whose ends stand; the hours that stay open."""
+    free = np.ones(state.ends.size, dtype=bool)
+    free[list(stepped)] = False
     known: _Part | None = None
     for iteration in range(MOST_ITERATIONS):
-        first = known = model.first(memories, start=np.roll(ends, 1), ran=np.roll(ran, 1), flow=flow, known=known)
-        second = model.second(memories, first, flow=flow)
+        first = known = model.first(state, known=known)
+        second = model.second(state, first)
         end, by_start, ran = _joined(first, second)
-        missed = end - ends
-        still_open = max(model.rate * np.abs(missed).max(), first.open.max(), second.open.max(initial=0.0))
-        if still_open < EXACT:
+        state.ran = np.where(free, ran, state.ran)
+        missed, by_start = np.where(free, end - state.ends, 0.0), np.where(free, by_start, 0.0)
+        left = np.maximum(model.rate * np.abs(missed), np.where(free, first.open, 0.0))
+        left[second.hours] = np.maximum(left[second.hours], np.where(free[second.hours], second.open, 0.0))
+        if left.max() < EXACT:
             break
         shift = np.clip(_carried(missed, by_start), -LONGEST_STEP, LONGEST_STEP)
-        _remember(memories, first, second, moved=np.roll(shift, 1))
+        _remember(state.memories, first, second, moved=np.roll(shift, 1))
         if iteration < MOST_FILMS:
             for part in (first, second):
-                model.refilm(part, flow, t_film)
-        ends = ends + shift
-    hours = _drift(model, first, second, end=end, flow=flow)
-    return hours if hours.converged.all() else mended(hours, model=model, flow=flow, ran=ran)
+                model.refilm(part, state)
+        state.ends = state.ends + shift
+    return first, second, np.flatnonzero(left >= EXACT).tolist()
 
 
 class DriftModel(NamedTuple):
@@ -164,7 +206,7 @@ class DriftModel(NamedTuple):
         """Plate temperature at which the pump stops [K]."""
         return self.feed + self.uptake.stop_above
 
-    def guess(self, around: Surroundings) -> tuple[tuple[_Memory, _Memory], Floats]:
+    def guess(self, around: Surroundings) -> _State:
         """Standing near balance but not above the feed; running a little above it; film and heat capacity flow at the feed."""
         network, sun = self.network, self.absorbed.plate
         loss = 3.0 + network.u_back + network.u_edge + (0.0 if network.gaps else float(around.h_wind.mean()))
@@ -178,12 +220,17 @@ class DriftModel(NamedTuple):
             for t_plate in (np.minimum(alone, self.feed), self.feed + above)
         )
         standing.nodes[-1] += np.where(alone > self.feed, above, 0.0)
-        return (standing, running), np.array(self.uptake.stream.at(np.full_like(sun, self.feed)))
+        return _State(
+            memories=(standing, running),
+            flow=np.array(self.uptake.stream.at(np.full_like(sun, self.feed))),
+            t_film=np.full_like(sun, self.feed),
+            ends=np.minimum(standing.nodes[-1], running.nodes[-1]),
+            ran=np.zeros(sun.size, dtype=bool),
+        )
 
-    def first(
-        self, memories: tuple[_Memory, _Memory], *, start: Floats, ran: Mask, flow: Floats, known: _Part | None
-    ) -> _Part:
+    def first(self, state: _State, *, known: _Part | None) -> _Part:
         """The part that begins every hour, cut where the pump starts or stops; what stayed as known is not taken again."""
+        memories, flow, start, ran = state.memories, state.flow, np.roll(state.ends, 1), np.roll(state.ran, 1)
         on = (start > self.starts) | (ran & (start > self.stops))
         hours = np.arange(on.size)
         nodes = np.where(on, memories[1].nodes, memories[0].nodes)
@@ -210,11 +257,12 @@ class DriftModel(NamedTuple):
             hours, on, on, nodes, line, share, start, start + rise, start + weight * rise, by_start, mean_by_start
         )
 
-    def second(self, memories: tuple[_Memory, _Memory], first: _Part, *, flow: Floats) -> _Part:
+    def second(self, state: _State, first: _Part) -> _Part:
         """The part that ends an hour which has two, in the other state of the pump.
 
         Where the pump would start and stop again and again, the plate stays between, and the fluid takes all that is gained.
         """
+        memories, flow = state.memories, state.flow
         hours = np.flatnonzero(first.share < 1.0)
         on = ~first.on[hours]
         nodes = np.where(on, memories[1].nodes[:, hours], memories[0].nodes[:, hours])
@@ -238,12 +286,12 @@ class DriftModel(NamedTuple):
             by_start, runs = np.where(cycles, 0.0, by_start), on | cycles
         return _Part(hours, on, runs, nodes, line, share, start, end, mean, by_start, np.zeros(hours.size))
 
-    def refilm(self, part: _Part, flow: Floats, t_film: Floats) -> None:
+    def refilm(self, part: _Part, state: _State) -> None:
         """Take film and heat capacity flow again where the mean fluid temperature has left the one they were taken at."""
-        late = part.on & (np.abs(part.line.t_mean - t_film[part.hours]) > SETTLED)
+        late = part.on & (np.abs(part.line.t_mean - state.t_film[part.hours]) > SETTLED)
         if late.any():
             hours, t_mean = part.hours[late], part.line.t_mean[late]
-            flow[:, hours], t_film[hours] = self.uptake.stream.at(t_mean), t_mean
+            state.flow[:, hours], state.t_film[hours] = self.uptake.stream.at(t_mean), t_mean
 
     def _renewed(self, known: _Part, on: Mask, *, nodes: Floats, flow: Floats) -> Line:
         """The known line, taken again in the hours whose nodes have moved or whose pump has turned."""
@@ -319,14 +367,15 @@ def _moved(part: _Part, memories: tuple[_Memory, _Memory], *, moved: Floats) -> 
     """A part's nodes at its mean, left alone where they are there already, and what shapes its course."""
     moves = part.line.step.move(plate=part.mean + part.mean_by_start * moved - part.line.t)
     largest = np.abs(moves).max(axis=0)
-    moves = np.where(largest * part.line.fall < 0.01 * EXACT, 0.0, np.clip(moves, -LONGEST_STEP, LONGEST_STEP))
+    moves = np.where(largest * part.line.fall < 0.1 * EXACT, 0.0, np.clip(moves, -LONGEST_STEP, LONGEST_STEP))
     known = np.where(part.on, memories[1].fall[part.hours], memories[0].fall[part.hours])
     return part.nodes + moves, np.where((largest > FITTED) | np.isnan(known), part.line.fall, known)
 
 
-def _drift(model: DriftModel, first: _Part, second: _Part, *, end: Floats, flow: Floats) -> Operated:
+def _drift(model: DriftModel, first: _Part, second: _Part, *, state: _State) -> Operated:
     """Hours put together of their parts, each balance taken afresh."""
-    parts = (first, second)
+    parts, flow = (first, second), state.flow
+    end, _, _ = _joined(first, second)
 
     def summed(values: tuple[Floats, Floats]) -> Floats:
         whole = first.share * values[0]
