@@ -60,7 +60,7 @@ def test_files_that_the_prose_points_to_exist():
 def test_the_gate_runs_the_readmes_own_test_command():
     gate = (ROOT / ".ci" / "run").read_text(encoding="utf-8")
     assert "grep -m 1 'python -m pytest' README.md" in gate
-    assert README.count("python -m pytest\n") == 1
+    assert README.count("python -m pytest -n auto\n") == 1
 
 
 def test_every_option_of_every_command_has_help():

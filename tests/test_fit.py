@@ -206,6 +206,7 @@ def test_too_few_points_are_refused(tmp_path):
     ("option", "message"),
     [
         (["--terms", "eta0,a9"], "--terms: unknown term; got a9; allowed: eta0, a1_W_m2K"),
+        (["--terms", "eta0,eta0"], "asked for twice; got eta0"),
         (["--parameter", "collector.absorber.emitance"], "did you mean collector.absorber.emittance?"),
     ],
 )

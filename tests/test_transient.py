@@ -166,3 +166,24 @@ def test_heat_held_by_materials_is_the_textbooks_sum():
     assert 0.1 < held.covers / 6000.0 < 0.35  # 0.27 for one cover in Duffie & Beckman, Table 6.12.1 (from memory)
     assert held.insulation == 1250.0
     assert held_heat(collector(), network_of(collector(), pressure=101_325.0)) is None
+
+
+@pytest.mark.parametrize(
+    "overrides",
+    [
+        ["operation.mean_C=25"],
+        ["mounting.tilt_deg=0"],
+        ["operation.inlet_C=0"],
+        ["operation.inlet_C=15", "collector.absorber.emittance=0.95"],
+        ["operation.inlet_C=80", "operation.start_K=5", "operation.stop_K=1.5", "collector.capacity_kJ_m2K=1.7"],
+    ],
+)
+def test_hours_at_a_kink_of_a_relation_are_solved_too(overrides):
+    """Each of these years has hours at the onset of convection, or of a pump that comes and goes, that no exponential describes."""
+    scenario = read_scenario(SCENARIO, overrides=overrides)
+    (solved,) = heat_years(scenario, weather=open_scenario_weather(scenario, base=SCENARIO.parent))
+    assert solved.drift is not None
+    assert solved.drift.converged.all()
+    out = solved.drift.useful + solved.drift.losses.total + solved.drift.idle + solved.drift.stored
+    assert np.abs(solved.conditions.absorbed.plate - out).max() < 1e-6
+    assert np.abs(np.diff(solved.drift.t_end)).max() < 300.0

@@ -276,6 +276,9 @@ class ReportTable(Table):
 
     @model_validator(mode="after")
     def _check(self) -> ReportTable:
+        if self.a1_W_m2K <= 3.0 * self.a3_J_m3K:
+            got, allowed = f"{self.a1_W_m2K:g} W/m2K", f"above 3 a3, {3.0 * self.a3_J_m3K:g} W/m2K"
+            raise fault("in calm air the loss would vanish", key="a1_W_m2K", allowed=allowed, got=got)
         self._one_of(RIVALS["incidence"])
         angles, values = self.incidence_deg, self.K_beam
         if angles is not None and values is not None:

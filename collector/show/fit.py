@@ -29,10 +29,10 @@ def fit_text(fit: Mapping[str, Any]) -> str:
         Lines of at most 80 columns.
     """
     words = (
-        "coefficients of ISO 9806" if fit["kind"] == "report" else "parameters of the build, through the heat balance"
+        "Coefficients of ISO 9806" if fit["kind"] == "report" else "Parameters of the build, through the heat balance"
     )
     lines = [
-        f"{len(fit['terms'])} {words}, from {fit['points']} points",
+        f"{words}: {len(fit['terms'])} fitted, from {fit['points']} points",
         "",
         f"{'':<42} {'value':>10} {'std error':>10} {'t-ratio':>8}",
     ]

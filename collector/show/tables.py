@@ -433,6 +433,10 @@ def _cell(value: float | None, form: str) -> str:
     return "-" if value is None else format(value, form)
 
 
+def _taken_up(found: RUN) -> str:
+    return "peak efficiency by the report" if found["by_report"] else "at normal incidence the plate takes up"
+
+
 def check_text(found: RUN) -> str:
     """What a scenario comes to before it is solved.
 
@@ -453,7 +457,7 @@ def check_text(found: RUN) -> str:
         _verdict(found["weather"]),
         "",
         f"  {'inlet' if 'inlet_C' in found else 'mean fluid'} {temperatures} C, {found['area_m2']:.1f} m2 of collector",
-        f"  at normal incidence the plate takes up {100 * found['normal_absorptance_plate']:.1f} % of the sunlight",
+        f"  {_taken_up(found)} {100 * found['normal_absorptance_plate']:.1f} % of the sunlight",
         f"  back {found['U_back_W_m2K']:.2f}, edges {found['U_edge_W_m2K']:.2f} W/m2K",
     ]
     blocks = [lines, _basis(found), *remarks([found])]

@@ -113,6 +113,7 @@ def inspected(scenario: Scenario, *, base: Path) -> dict[str, Any]:
         "title": scenario.title,
         **{key: value for key, value in held.items() if value is not None},
         "area_m2": scenario.collector.modules * model.collector.area,
+        "by_report": scenario.collector.tested is not None,
         "normal_absorptance_plate": _at_normal(model),
         "U_back_W_m2K": model.network.u_back,
         "U_edge_W_m2K": model.network.u_edge,

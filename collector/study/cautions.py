@@ -101,7 +101,9 @@ def when_running(outlet_C: float) -> Iterator[str]:  # noqa: N803 # the unit's s
     str
         Scald, Legionella.
     """
+    if outlet_C > BOILING:
+        yield f"Outlet up to {outlet_C:.0f} C while running: without pressure it boils; steam, relief and expansion as above."
     if outlet_C > SCALD:
-        yield f"Outlet up to {outlet_C:.0f} C: above {SCALD:.0f} C water scalds, at 60 C in seconds; limit it at the tap."
+        yield f"Outlet up to {outlet_C:.1f} C: above {SCALD:.0f} C water scalds, at 60 C in seconds; limit it at the tap."
     if outlet_C > LEGIONELLA[0]:
         yield "Water stored between 20 and 50 C breeds Legionella: heat a store through as the local code says."

@@ -28,6 +28,7 @@ LEVELS = 9  # of mean fluid temperature; the standard asks for four
 LONGWAVE = -100.0  # W/m2, sky's long wave less that of the air: for power curves in ISO 9806:2013
 ANGLES = np.arange(0.0, 90.0, 10.0)  # deg
 STAGNATION = {"irradiance": 1000.0, "air_C": 30.0}  # standard stagnation, ISO 9806 (from memory)
+STILL = 1.0  # m/s, of stagnation: the standard asks for less (from memory)
 LABORATORY = {"irradiance": 950.0, "air_C": 22.0}  # where a laboratory might measure it and extrapolate from
 BLUE_SKY = (0.85, 0.15)  # beam and diffuse of hemispherical light, ISO 9806:2017 Annex B
 TERMS = ("eta0", "a1_W_m2K", "a2_W_m2K2", "a3_J_m3K", "a4", "a6_s_m")
@@ -80,12 +81,16 @@ class Bench:
         if wrong:
             raise InputError(wrong)
 
-    @property
-    def t_sky(self) -> float:
-        """Sky temperature [K]."""
+    def t_sky(self, share: float) -> float:
+        """Return the sky temperature [K]; the standard's long wave is that on the plane, where the sky has its share."""
         if self.sky_temp is not None:
             return self.sky_temp + zero_Celsius
-        return float(((self.air + zero_Celsius) ** 4 + LONGWAVE / Stefan_Boltzmann) ** 0.25)
+        return _sky_of(LONGWAVE, t_air=self.air + zero_Celsius, share=share)
+
+
+def _sky_of(longwave: float, *, t_air: float, share: float) -> float:
+    """Sky temperature [K] that makes long wave on the plane so much more than the air's; what is not sky is as warm as air."""
+    return float((t_air**4 + longwave / Stefan_Boltzmann / share) ** 0.25)
 
 
 def curve_of(scenario: Scenario, bench: Bench, *, terms: bool = False) -> dict[str, Any]:
@@ -120,7 +125,7 @@ def curve_of(scenario: Scenario, bench: Bench, *, terms: bool = False) -> dict[s
             "irradiance_W_m2": bench.irradiance,
             "air_C": bench.air,
             "wind_m_s": bench.wind,
-            "sky_C": bench.t_sky - zero_Celsius,
+            "sky_C": bench.t_sky(model.network.sky_share) - zero_Celsius,
         },
         "points": [
             {"above_air_K": float(level), "reduced_m2K_W": float(level / bench.irradiance), "efficiency": float(value)}
@@ -211,7 +216,7 @@ def _beam(irradiance: float) -> PlaneIrradiance:
 
 
 def _useful(scenario: Scenario, model: Model, bench: Bench, *, mean_above: float) -> float:
-    around = _around(scenario, air_C=bench.air, t_sky=bench.t_sky, wind=bench.wind)
+    around = _around(scenario, air_C=bench.air, t_sky=bench.t_sky(model.network.sky_share), wind=bench.wind)
     feed = Feed(bench.air + zero_Celsius + mean_above, at_inlet=False)
     absorbed = model.absorbed(_beam(bench.irradiance), around)
     state = solve_running(model.network, around, absorbed, uptake=model.uptake(feed))
@@ -227,8 +232,8 @@ def _terms(scenario: Scenario, model: Model, bench: Bench) -> dict[str, float]:
     for level in _levels(scenario, bench)[::2]:
         for wind in (1.0, 2.0, 3.0, 4.0, 5.0):
             for longwave in (-150.0, -100.0, -50.0, 0.0):
-                sky = float((t_air**4 + longwave / Stefan_Boltzmann) ** 0.25) - zero_Celsius
-                here = replace(bench, wind=wind, sky_temp=sky)
+                t_sky = _sky_of(longwave, t_air=t_air, share=model.network.sky_share)
+                here = replace(bench, wind=wind, sky_temp=t_sky - zero_Celsius)
                 values.append(_useful(scenario, model, here, mean_above=float(level)))
                 beyond, g = wind - 3.0, bench.irradiance
                 rows.append([g, -level, -(level**2), -beyond * level, longwave, -beyond * g])
@@ -246,7 +251,7 @@ def _effective_capacity(scenario: Scenario, model: Model, bench: Bench) -> float
         return None
     if not isinstance(model.collector, Collector):
         return model.capacity / 1e3
-    around = _around(scenario, air_C=bench.air, t_sky=bench.t_sky, wind=bench.wind)
+    around = _around(scenario, air_C=bench.air, t_sky=bench.t_sky(model.network.sky_share), wind=bench.wind)
     feed = Feed(bench.air + zero_Celsius + bench.at, at_inlet=False)
     absorbed = model.absorbed(_beam(bench.irradiance), around)
     state = solve_running(model.network, around, absorbed, uptake=model.uptake(feed))
@@ -281,8 +286,8 @@ def _diffuse(model: Model) -> float:
 
 def _still(scenario: Scenario, model: Model, bench: Bench, *, irradiance: float, air_C: float) -> float:  # noqa: N803
     """Plate temperature with no flow [K]."""
-    t_sky = replace(bench, air=air_C).t_sky
-    around = _around(scenario, air_C=air_C, t_sky=t_sky, wind=bench.wind)
+    t_sky = replace(bench, air=air_C).t_sky(model.network.sky_share)
+    around = _around(scenario, air_C=air_C, t_sky=t_sky, wind=STILL)
     absorbed = model.absorbed(_beam(irradiance), around)
     return float(solve_stagnation(model.network, around, absorbed).t_plate[0])
 
@@ -329,7 +334,12 @@ def _notices(scenario: Scenario, bench: Bench, *, levels: Floats, fitted: dict[s
         said.append(f"{fluid.name}: {beyond} levels beyond the data's {high - zero_Celsius:.0f} C, held at its end")
     if fitted["a2_W_m2K2"] == 0.0:
         said.append("a2 came out negative and was left out, as the standard asks")
+    report = scenario.collector.tested
+    if report is not None and report.tested_to_K is not None and levels[-1] > report.tested_to_K:
+        said.append(
+            f"levels beyond {report.tested_to_K:g} K, to which the report was tested, and stagnation: extrapolated"
+        )
     if bench.at > levels[-1]:
         said.append(f"the working point, {bench.at:g} K, is beyond the last level, {levels[-1]:g} K: extrapolated")
-    said.append("stagnation in the bench's wind and sky")
+    said.append(f"stagnation in wind of {STILL:g} m/s, under the bench's sky; in calm air it is hotter")
     return said

@@ -79,6 +79,9 @@ def fitted_of(
     if unknown := [name for name in terms or () if name not in TERMS]:
         problem = Problem(where="--terms", what="unknown term", got=", ".join(unknown), allowed=", ".join(TERMS))
         raise InputError(problem)
+    twice = sorted({name for names in (terms or (), parameters) for name in names if list(names).count(name) > 1})
+    if twice:
+        raise InputError(Problem(where="--terms, --parameter", what="asked for twice", got=", ".join(twice)))
     if not parameters:
         return fit_report(points, terms=terms, drop=drop) | {"title": scenario.title}
     known = [parameter_of(scenario, key) for key in parameters]
@@ -265,14 +268,12 @@ def _powers(scenario: Scenario, points: Points) -> Floats:
         incidence_deg=points.incidence_deg,
         notices=(),
     )
-    factor = 1.0 if scenario.mounting.wind_factor is None else scenario.mounting.wind_factor
-    wind = factor * points.wind
     around = Surroundings(
         t_air=points.t_air,
         t_sky=points.t_sky,
         t_ground=points.t_air,
-        h_wind=wind_coefficient(scenario, wind),
-        wind=wind,
+        h_wind=wind_coefficient(scenario, points.wind),
+        wind=points.wind,
     )
     absorbed = model.absorbed(plane, around)
     useful = np.empty(len(points))

@@ -75,6 +75,7 @@ def common_notices(year: HeatYear, scenario: Scenario, *, hours: Operated, still
         *_sky(year, scenario, on=hours.on),
         *_gaps(year, hours),
         *_report(year, hours),
+        *_pump(year, hours, scenario),
     ]
 
 
@@ -107,6 +108,8 @@ def _film(hours: Operated, stream: Stream) -> Iterator[str]:
 
 
 def _wind(year: HeatYear, scenario: Scenario, *, on: Mask) -> Iterator[str]:
+    if scenario.collector.tested is not None:
+        return
     limit = WIND_RELATIONS[scenario.models.wind].limit
     wind, _ = wind_at_collector(scenario, year.conditions.weather.wind)
     above = wind[on] > limit
@@ -118,7 +121,9 @@ def _wind(year: HeatYear, scenario: Scenario, *, on: Mask) -> Iterator[str]:
 
 
 def _sky(year: HeatYear, scenario: Scenario, *, on: Mask) -> Iterator[str]:
-    t_dew = year.conditions.weather.t_dew
+    t_dew, report = year.conditions.weather.t_dew, scenario.collector.tested
+    if report is not None and not (report.a4 or report.a7_J_m3K4):
+        return
     if t_dew is None or "t_dew" not in NEEDS.get(scenario.models.sky, ()):
         return
     low, high = DEW_POINT_RANGE
@@ -153,5 +158,17 @@ def _report(year: HeatYear, hours: Operated) -> Iterator[str]:
     elif (above > report.tested_to).any():
         beyond = np.count_nonzero(above > report.tested_to)
         yield f"{beyond} running h beyond the tested {report.tested_to:g} K above the air (to {above.max():.0f} K), extrapolated"
+    normal = float(np.interp(0.0, report.beam_angles_deg, report.beam_modifiers))
+    if abs(normal - 1.0) > 0.02:
+        yield f"the report's K_beam at normal incidence is {normal:.3f} and not 1: eta0 counts that much less"
     if report.diffuse_modifier is None:
         yield f"no K_diffuse in the report: {diffuse_modifier(report):.3f}, the beam's integrated over the hemisphere"
+
+
+def _pump(year: HeatYear, hours: Operated, scenario: Scenario) -> Iterator[str]:
+    if scenario.operation.start_K:
+        yield "running hours include, as whole, those in which the pump starts and stops again and again"
+    dark = hours.on & (year.conditions.absorbed.plate == 0.0)
+    if dark.any():
+        heat = float(hours.useful[dark].sum()) / 1e3
+        yield f"{np.count_nonzero(dark)} running h without sun draw {heat:.1f} kWh/m2 from the air; condensation is not modelled"

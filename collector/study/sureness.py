@@ -50,7 +50,7 @@ def alternatives(scenario: Scenario, *, weather: WeatherYear) -> list[list[Alter
 
 
 def _others(scenario: Scenario, weather: WeatherYear) -> Iterator[tuple[str, str, Scenario, bool]]:
-    for step in STEPS:
+    for step in _steps(scenario):
         names = available_models(weather) if step == "sky" else list(CHOICES[step])
         for name in names:
             if name != getattr(scenario.models, step):
@@ -62,7 +62,17 @@ def _others(scenario: Scenario, weather: WeatherYear) -> Iterator[tuple[str, str
     else:
         factor = 1.0 if mounting.wind_factor is None else mounting.wind_factor
     half = mounting.model_copy(update={"wind_height_m": None, "wind_factor": 0.5 * factor})
-    yield "wind speed", "half", _with(scenario, mounting=half), False
+    report = scenario.collector.tested
+    if report is None or report.a3_J_m3K or report.a6_s_m or report.a7_J_m3K4:
+        yield "wind speed", "half", _with(scenario, mounting=half), False
+
+
+def _steps(scenario: Scenario) -> tuple[str, ...]:
+    """Steps whose relation this collector's year rests on; a test report holds wind, and often sky, in its coefficients."""
+    report = scenario.collector.tested
+    if report is None:
+        return STEPS
+    return ("sky", "tilted_sky") if report.a4 or report.a7_J_m3K4 else ("tilted_sky",)
 
 
 def _with_model(scenario: Scenario, *, step: str, name: str) -> tuple[Scenario, str]:
