@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import codecs
+import warnings
 from collections.abc import Callable, Mapping
 from dataclasses import replace
 from functools import partial
@@ -72,7 +73,11 @@ def read(
     text = _text(path)
     name, reader = _reader(text, columns=columns, place=place or {}, file=str(path))
     try:
-        raw = reader(text, path)
+        with warnings.catch_warnings():
+            warnings.simplefilter(
+                "ignore"
+            )  # a library's warnings about a damaged file come out as this file's own message
+            raw = reader(text, path)
         raw = hourly(raw if year is None else one_year(raw, year=year, file=str(path)), file=str(path))
     except InputError:
         raise
