@@ -3,26 +3,68 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from typing import TYPE_CHECKING, NamedTuple
+from typing import NamedTuple, Protocol
 
 import numpy as np
+from numpy.typing import NDArray
 
-from collector.balance.losses import Losses
+from collector.balance.losses import Losses, Step
 from collector.balance.operated import Operated
-from collector.balance.steady import SOLVED, Flow
-from weather.year import Floats
+from collector.balance.optics import Absorbed
+from collector.balance.steady import SOLVED, Flow, Uptake
+from weather.year import Floats, Mask
 
-if TYPE_CHECKING:
-    from numpy.typing import NDArray
+__all__ = ["Line", "SteppedHour", "in_steps", "with_stepped"]
 
-    from collector.balance.transient import DriftModel, Line
-
-    Hours = NDArray[np.intp]
-
-__all__ = ["SteppedHour", "in_steps", "with_stepped"]
-
+Hours = NDArray[np.intp]
 STEPS = 12  # in an hour
 COVERS_AT_REST = 1e-10  # K
+
+
+class Line(NamedTuple):
+    """Net gain of the plate [W/m2] at temperature ``t`` [K], linear, with the network and the fluid that it was taken from."""
+
+    t: Floats
+    net: Floats
+    fall: Floats
+    step: Step
+    drawn: Floats
+    t_mean: Floats
+
+    def at(self, t: Floats) -> Floats:
+        """Net gain at another temperature."""
+        return self.net - self.fall * (t - self.t)
+
+
+class Drifting(Protocol):
+    """What an hour in small steps needs of the year that it stands in."""
+
+    @property
+    def absorbed(self) -> Absorbed:
+        """Sunlight of all hours."""
+
+    @property
+    def uptake(self) -> Uptake:
+        """Tubes, stream and fed temperature."""
+
+    @property
+    def rate(self) -> float:
+        """Heat held per kelvin and hour [W/m2K]."""
+
+    @property
+    def feed(self) -> float:
+        """The fed temperature [K]."""
+
+    @property
+    def starts(self) -> float:
+        """Plate temperature at which the pump starts [K]."""
+
+    @property
+    def stops(self) -> float:
+        """Plate temperature at which the pump stops [K]."""
+
+    def line(self, hours: Hours, on: Mask, *, nodes: Floats, flow: Floats) -> Line:
+        """Return the net gain of some hours at given temperatures."""
 
 
 class SteppedHour(NamedTuple):
@@ -41,7 +83,7 @@ class SteppedHour(NamedTuple):
     open_covers: float
 
 
-def with_stepped(hours: Operated, stepped: Mapping[int, SteppedHour], *, model: DriftModel) -> Operated:
+def with_stepped(hours: Operated, stepped: Mapping[int, SteppedHour], *, model: Drifting) -> Operated:
     """Put hours solved in small steps in their places.
 
     Parameters
@@ -76,7 +118,7 @@ def with_stepped(hours: Operated, stepped: Mapping[int, SteppedHour], *, model: 
     return Operated(losses=losses, **fields)
 
 
-def in_steps(model: DriftModel, hour: int, *, start: float, ran: bool, flow: Floats) -> SteppedHour:
+def in_steps(model: Drifting, hour: int, *, start: float, ran: bool, flow: Floats) -> SteppedHour:
     """Solve one hour from a start, the pump's state taken afresh at every step.
 
     A step's mean temperature is that of the exponential from its start; what is stored is the net gain at that mean, with the
@@ -137,7 +179,7 @@ def _mean(line: Line, *, t: float, rate: float) -> float:
     return balance + (t - balance) * -float(np.expm1(-x)) / x
 
 
-def _at_rest(model: DriftModel, hour: Hours, *, on: bool, nodes: Floats, t: float, flow: Floats) -> tuple[Line, Floats]:
+def _at_rest(model: Drifting, hour: Hours, *, on: bool, nodes: Floats, t: float, flow: Floats) -> tuple[Line, Floats]:
     """The line at a plate temperature, with the covers where they balance, and all nodes."""
     nodes = nodes.copy()
     nodes[-1] = t

@@ -10,14 +10,14 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg.lapack import dtbtrs
 
-from collector.balance.losses import Facing, Losses, Step, Surroundings
+from collector.balance.losses import Facing, Losses, Surroundings
 from collector.balance.operated import Operated
 from collector.balance.optics import Absorbed
 from collector.balance.steady import LONGEST_STEP, MOST_FILMS, SETTLED, SOLVED, Flow, Network, Uptake, first_guess
-from collector.balance.stepped import SteppedHour, in_steps, with_stepped
+from collector.balance.stepped import Line, SteppedHour, in_steps, with_stepped
 from weather.year import Floats, Mask
 
-__all__ = ["DriftModel", "Line", "solve_drift"]
+__all__ = ["DriftModel", "solve_drift"]
 
 HOUR = 3600.0  # s
 EXACT = 4e-7  # W/m2, of every part's balance and every hour's joint
@@ -66,21 +66,6 @@ class _State:
     t_film: Floats
     ends: Floats
     ran: Mask
-
-
-class Line(NamedTuple):
-    """Net gain of the plate [W/m2] at temperature ``t`` [K], linear, with the network and the fluid that it was taken from."""
-
-    t: Floats
-    net: Floats
-    fall: Floats
-    step: Step
-    drawn: Floats
-    t_mean: Floats
-
-    def at(self, t: Floats) -> Floats:
-        """Net gain at another temperature."""
-        return self.net - self.fall * (t - self.t)
 
 
 class _Part(NamedTuple):
