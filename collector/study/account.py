@@ -76,7 +76,7 @@ def runs_of(scenario: Scenario, *, base: Path) -> list[Run]:
     """
     weather = open_scenario_weather(scenario, base=base)
     years = heat_years(scenario, weather=weather)
-    spreads = alternatives(scenario, weather=weather)
+    spreads = alternatives(scenario, weather=weather, base=years[0])
     still = standing(years[0].conditions)
     steady = heat_years(scenario, weather=weather, held=False) if years[0].drift else years
     runs = []

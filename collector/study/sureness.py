@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from typing import Any, NamedTuple
 
 from collector.build.scenario import CHOICES, Scenario
-from collector.study.year import WIND_PROFILE, heat_years
+from collector.study.year import WIND_PROFILE, HeatYear, heat_years
 from weather.sky import available_models
 from weather.sun import sun_position
 from weather.year import WeatherYear
@@ -14,6 +14,7 @@ from weather.year import WeatherYear
 __all__ = ["Alternative", "alternatives"]
 
 BUILDING_LENGTH = 8.0  # m, cube root of a house of about 500 m3, where the scenario names no building
+AROUND = ("wind", "sky", "wind speed")  # what leaves the sunlight absorbed as it is
 STEPS = ("wind", "sky", "tilted_sky", "diffuse")
 
 
@@ -26,7 +27,7 @@ class Alternative(NamedTuple):
     bound: bool
 
 
-def alternatives(scenario: Scenario, *, weather: WeatherYear) -> list[list[Alternative]]:
+def alternatives(scenario: Scenario, *, weather: WeatherYear, base: HeatYear) -> list[list[Alternative]]:
     """Repeat a year with each other relation for wind, sky, tilted sky and diffuse optics, and with half the wind.
 
     Parameters
@@ -35,6 +36,8 @@ def alternatives(scenario: Scenario, *, weather: WeatherYear) -> list[list[Alter
         The base case.
     weather
         Its year.
+    base
+        As solved for the base case, at any of its temperatures.
 
     Returns
     -------
@@ -42,8 +45,14 @@ def alternatives(scenario: Scenario, *, weather: WeatherYear) -> list[list[Alter
         For each temperature of the scenario, in its order.
     """
     sun = sun_position(weather)
+    by_build = scenario.collector.tested is None  # of a test report, wind changes what is absorbed too
     rows = [
-        [Alternative(changed, to, year.useful_kWh_m2, bound) for year in heat_years(other, weather=weather, sun=sun)]
+        [
+            Alternative(changed, to, year.useful_kWh_m2, bound)
+            for year in heat_years(
+                other, weather=weather, sun=sun, like=base if changed in AROUND and by_build else None
+            )
+        ]
         for changed, to, other, bound in _others(scenario, weather)
     ]
     return [list(column) for column in zip(*rows, strict=True)]

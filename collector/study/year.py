@@ -103,7 +103,7 @@ class HeatYear:
 
 
 def heat_years(
-    scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = None, held: bool = True
+    scenario: Scenario, *, weather: WeatherYear, sun: Sun | None = None, held: bool = True, like: HeatYear | None = None
 ) -> list[HeatYear]:
     """Solve a scenario's year, once for each temperature it asks for.
 
@@ -117,13 +117,19 @@ def heat_years(
         At mid-hour, if it is known already.
     held
         Whether the heat that the collector holds counts, where it is known.
+    like
+        A year of the same collector in the same sun, if only what surrounds it is different.
 
     Returns
     -------
     list of HeatYear
         In the scenario's order of temperatures.
     """
-    conditions = conditions_of(scenario, weather=weather, sun=sun)
+    if like is None:
+        conditions = conditions_of(scenario, weather=weather, sun=sun)
+    else:
+        around = _surroundings(scenario, weather=weather, sun=sun or sun_position(weather))
+        conditions = replace(like.conditions, around=around)
     if not held:
         conditions = replace(conditions, model=replace(conditions.model, capacity=None))
     return [_at(conditions, uptake) for uptake in _uptakes(scenario, conditions.model)]
